@@ -1,0 +1,1 @@
+"""What is asked of finished packages: verify, rerun, compare, register."""

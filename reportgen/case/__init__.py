@@ -1,0 +1,1 @@
+"""Case files: reading with positions, models, units to SI, JSON Schema."""

@@ -1,0 +1,1 @@
+"""Limits by published source: pure functions."""

@@ -1,0 +1,1 @@
+"""Calculation packages: manifest, identities, sign-off, atomic writing."""

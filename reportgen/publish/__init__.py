@@ -1,0 +1,1 @@
+"""From executed notebook to HTML and PDF, out of one document structure."""

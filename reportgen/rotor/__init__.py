@@ -1,0 +1,1 @@
+"""Mechanics of rotors in lateral vibration: pure functions and frozen dataclasses over SI."""

@@ -1,0 +1,1 @@
+"""Run templates over case files, with our own account of every cell."""

@@ -1,0 +1,1 @@
+"""What a template may show: givens, equation lines, tables, figures, verdicts, cautions."""

@@ -1,0 +1,1 @@
+"""Tolerance studies over cases."""
