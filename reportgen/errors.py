@@ -68,6 +68,39 @@ class RunError(ReportgenError):
     """A template did not run to its end."""
 
 
+class CellError(RunError):
+    """A cell of a template failed, did not end, or never ran.
+
+    Parameters
+    ----------
+    template
+        File name of the template.
+    number
+        Place of the cell in the template, counted from 1 over cells of every kind.
+    line
+        First line of the cell.
+    name, message
+        The exception's name and message, or what stands for them.
+    partial
+        The notebook as far as it came, as the bytes of an ``.ipynb`` file.
+    """
+
+    def __init__(
+        self, template: str, number: int, line: str, name: str, message: str, partial: bytes = b""
+    ) -> None:
+        super().__init__(template, number, line, name, message, partial)
+        self.template = template
+        self.number = number
+        self.line = line
+        self.name = name
+        self.message = message
+        self.partial = partial
+
+    def __str__(self) -> str:
+        """Give one line: where it stands, what was met."""
+        return f"{self.template}, cell {self.number} ({self.line}): {self.name}: {self.message}"
+
+
 class PublishError(ReportgenError):
     """A report could not be rendered truthfully."""
 

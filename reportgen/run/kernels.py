@@ -1,0 +1,148 @@
+"""Kernels for runs: the Python that runs reportgen, apart from the user's own settings.
+
+A run must not depend on kernel specifications, IPython profiles, matplotlib settings or a
+number of threads that happen to be on a computer, so each kernel gets its own.
+"""
+
+from __future__ import annotations
+
+import os
+import sys
+import tempfile
+from collections.abc import Iterator
+from contextlib import contextmanager
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+from jupyter_client.kernelspec import KernelSpec, KernelSpecManager, NoSuchKernel
+from jupyter_client.manager import AsyncKernelManager
+
+from reportgen.run.normalise import SCRATCH_PREFIX
+from reportgen.run.template import KERNEL
+
+_SOCKET_PATH_LIMIT = 103  # macOS holds 104 bytes with the closing null, Linux 108
+
+KERNEL_ARGUMENTS = ["--HistoryManager.enabled=False"]
+"""Said here since nbclient keeps history off the disk for kernels named ``python*`` only."""
+
+ONE_THREAD = dict.fromkeys(("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"), "1")
+"""One thread a kernel: the last digits then do not depend on the number of cores."""
+
+
+@dataclass(frozen=True)
+class Scratch:
+    """The folder of one run; gone with all it holds when the run ends.
+
+    Parameters
+    ----------
+    root
+        Readable by its owner alone.
+    """
+
+    root: Path
+
+    @property
+    def work(self) -> Path:
+        """Folder the kernel works in: empty, so that a template reads nothing beside its case."""
+        return self.root / "work"
+
+    @property
+    def connection_file(self) -> Path:
+        """File by which the kernel and its client find each other."""
+        return self.root / "k.json"
+
+
+@contextmanager
+def scratch_folder() -> Iterator[Scratch]:
+    """Make the folder of one run and take it away at the end.
+
+    Yields
+    ------
+    Scratch
+        The folder.
+    """
+    with tempfile.TemporaryDirectory(prefix=SCRATCH_PREFIX, ignore_cleanup_errors=True) as name:
+        scratch = Scratch(Path(name))
+        scratch.work.mkdir()
+        (scratch.root / "matplotlibrc").touch()
+        yield scratch
+
+
+def kernel_environment(root: Path) -> dict[str, str]:
+    """Give the environment of a kernel.
+
+    Parameters
+    ----------
+    root
+        Folder that holds an empty ``matplotlibrc``; IPython's profile goes there too.
+
+    Returns
+    -------
+    dict[str, str]
+        This process's environment without what would run a user's code or change figures.
+    """
+    environment = {
+        name: value
+        for name, value in os.environ.items()
+        if name not in ("PYTHONSTARTUP", "MPLBACKEND", "JPY_PARENT_PID", "JPY_SESSION_NAME")
+    }
+    environment.update(ONE_THREAD)
+    environment["PYTHONHASHSEED"] = "0"
+    environment["IPYTHONDIR"] = str(root / "ipython")
+    environment["MATPLOTLIBRC"] = str(root / "matplotlibrc")
+    return environment
+
+
+class OwnKernelSpecs(KernelSpecManager):
+    """Knows one kernel, ``python3``: the interpreter that runs reportgen."""
+
+    provisioner = ""
+
+    def get_kernel_spec(self, kernel_name: str) -> KernelSpec:
+        """Return the specification without looking at what is installed on the computer."""
+        if kernel_name != KERNEL:
+            raise NoSuchKernel(kernel_name)
+        metadata: dict[str, Any] = {}
+        if self.provisioner:
+            metadata["kernel_provisioner"] = {"provisioner_name": self.provisioner, "config": {}}
+        return KernelSpec(
+            name=KERNEL,
+            argv=[
+                sys.executable,
+                *("-m", "ipykernel_launcher", "-f", "{connection_file}"),
+                *KERNEL_ARGUMENTS,
+            ],
+            display_name="Python 3",
+            language="python",
+            metadata=metadata,
+        )
+
+
+def kernel_manager(scratch: Scratch, provisioner: str = "") -> AsyncKernelManager:
+    """Give the manager of one kernel that is yet to start.
+
+    Parameters
+    ----------
+    scratch
+        Folder of the run; sockets lie in it. Free TCP ports, which papermill's own way takes,
+        can be taken by another run between finding and using them; file sockets cannot.
+    provisioner
+        Name of the kernel provisioner; empty for a process of its own.
+
+    Returns
+    -------
+    AsyncKernelManager
+        Over file sockets where the system has them and their path is short enough, else TCP.
+    """
+    specs = OwnKernelSpecs()
+    specs.provisioner = provisioner
+    manager = AsyncKernelManager(
+        kernel_name=KERNEL,
+        kernel_spec_manager=specs,
+        connection_file=str(scratch.connection_file),
+    )
+    longest = len(os.fsencode(scratch.connection_file.with_name("k-ipc-5")))
+    if sys.platform != "win32" and longest <= _SOCKET_PATH_LIMIT:
+        manager.transport = "ipc"
+    return manager
