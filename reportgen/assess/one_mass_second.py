@@ -1,0 +1,172 @@
+"""Second computations of the one-mass rotor, by methods that share no formula with the first.
+
+The first computation uses closed forms in the complex plane. Here the same rotor is
+written in two real planes as matrices (steady state, eigenvalues) and integrated in time
+(passage), with general-purpose linear algebra and integration only.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+from scipy.integrate import solve_ivp
+from scipy.linalg import eigh, eigvals
+from scipy.optimize import brentq, minimize_scalar
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    from reportgen.rotor.onemass import OneMassRotor
+    from reportgen.rotor.passage import ConstantAcceleration
+
+    Matrix = NDArray[np.float64]
+
+
+def matrices(rotor: OneMassRotor) -> tuple[Matrix, Matrix, Matrix]:
+    """Return mass, damping and stiffness of one plane: the rotor, then the support if any.
+
+    Shapes (1, 1), or (2, 2) with a support that has mass or damping of its own.
+    """
+    m, c, k = rotor.mass, rotor.damping, rotor.stiffness
+    if rotor.support is None:
+        return np.array([[m]]), np.array([[c]]), np.array([[k]])
+    s = rotor.support
+    return (
+        np.diag([m, s.mass]),
+        np.array([[c, 0.0], [0.0, s.damping]]),
+        np.array([[k, -k], [-k, k + s.stiffness]]),
+    )
+
+
+def natural_frequencies(rotor: OneMassRotor) -> NDArray[np.float64]:
+    """Return the undamped natural frequencies in rad/s, lowest first, from the matrices."""
+    M, _, K = matrices(rotor)
+    if M[-1, -1] == 0.0:  # a support without mass adds compliance, not a frequency
+        K, M = K[:1, :1] - K[:1, 1:] @ K[1:, :1] / K[1, 1], M[:1, :1]
+    return np.sqrt(eigh(K, M, eigvals_only=True))
+
+
+def amplitude(rotor: OneMassRotor, speed: float) -> float:
+    """Return the 0-peak amplitude at constant speed, in m, from real two-plane equations.
+
+    Cosine and sine parts of x and y are the unknowns of one real linear system, so that
+    neither complex whirl nor rotational symmetry is assumed.
+    """
+    M, C, K = matrices(rotor)
+    n = len(M)
+    D, B = K - speed**2 * M, speed * C
+    Z = np.zeros((n, n))
+    plane = np.block([[D, B], [-B, D]])  # rows: cosine balance, sine balance
+    system = np.block([[plane, np.block([[Z, Z], [Z, Z]])], [np.zeros((2 * n, 2 * n)), plane]])
+    force = np.zeros(4 * n)
+    direct = rotor.mass * rotor.eccentricity * speed**2
+    bent = rotor.stiffness * rotor.bow
+    cos, sin = direct + bent * np.cos(rotor.bow_angle), bent * np.sin(rotor.bow_angle)
+    force[0], force[n] = cos, -sin  # x: F cos(Ωt) and, from the angle, −F sin(Ωt)
+    force[2 * n], force[3 * n] = sin, cos  # y lags x by a quarter turn
+    if n == 2:
+        # the bow's elastic force acts back on the support
+        bow_cos, bow_sin = bent * np.cos(rotor.bow_angle), bent * np.sin(rotor.bow_angle)
+        force[1], force[n + 1] = -bow_cos, bow_sin
+        force[2 * n + 1], force[3 * n + 1] = -bow_sin, -bow_cos
+    u = np.linalg.solve(system, force)
+    xc, xs, yc, ys = u[0], u[n], u[2 * n], u[3 * n]
+    # major half-axis of the orbit, general ellipse
+    forward = 0.5 * np.hypot(xc + ys, yc - xs)
+    backward = 0.5 * np.hypot(xc - ys, yc + xs)
+    return float(forward + backward)
+
+
+def searched_peak(rotor: OneMassRotor, near: float) -> tuple[float, float]:
+    """Return speed and amplitude of the largest response found by search around ``near``."""
+    speeds = np.linspace(0.6, 1.6, 401) * near
+    values = [amplitude(rotor, s) for s in speeds]
+    i = int(np.argmax(values))
+    found = minimize_scalar(
+        lambda s: -amplitude(rotor, s),
+        bounds=(speeds[max(i - 1, 0)], speeds[min(i + 1, len(speeds) - 1)]),
+        method="bounded",
+        options={"xatol": 1e-9 * near},
+    )
+    return float(found.x), float(-found.fun)
+
+
+def half_power_amplification(rotor: OneMassRotor, peak_speed: float, peak: float) -> float:
+    """Return N_c/(N₂ − N₁) with both half-power speeds found by bracketing."""
+
+    def above(speed: float) -> float:
+        return amplitude(rotor, speed) - peak / np.sqrt(2)
+
+    low = brentq(above, 1e-3 * peak_speed, peak_speed, xtol=1e-10 * peak_speed)
+    high = peak_speed * 1.001
+    while above(high) > 0:
+        high *= 1.05
+        if high > 100 * peak_speed:
+            return float("nan")
+    return peak_speed / (brentq(above, peak_speed, high, xtol=1e-10 * peak_speed) - low)
+
+
+def ground_force(rotor: OneMassRotor, speed: float, displacement: complex) -> float:
+    """Return the force into the ground in N, by Newton's law on the centre of mass.
+
+    All that holds the rotor on its path reaches the ground, so mass times the
+    acceleration of the mass centre is that force; rigid supports only.
+    """
+    return float(rotor.mass * speed**2 * abs(displacement + rotor.eccentricity))
+
+
+def instability_onset(rotor: OneMassRotor) -> float:
+    """Return the speed in rad/s at which an eigenvalue crosses into growth, by bracketing."""
+    m, k = rotor.mass, rotor.stiffness
+    ce, ci = rotor.damping, rotor.internal_damping
+
+    def growth(speed: float) -> float:
+        C, K = (ce + ci) * np.eye(2), np.array([[k, ci * speed], [-ci * speed, k]])
+        A = np.block([[np.zeros((2, 2)), np.eye(2)], [-K / m, -C / m]])
+        return float(eigvals(A).real.max())
+
+    low = high = rotor.natural_frequency * (1 - 1e-6)
+    while growth(high) < 0:
+        low, high = high, 2 * high
+    return float(brentq(growth, low, high, xtol=1e-10 * high))
+
+
+def integrated_peak(rotor: OneMassRotor, programme: ConstantAcceleration) -> float:
+    """Return the largest |z| in m of a passage, by DOP853 in two real planes.
+
+    The start is the steady whirl at the starting speed, as in the first computation.
+    """
+    m, c, k, e = rotor.mass, rotor.damping, rotor.stiffness, rotor.eccentricity
+    w0, a = programme.start_speed, programme.acceleration
+    end = (programme.end_speed - w0) / a
+    bow = rotor.bow * np.exp(1j * rotor.bow_angle)
+    z0 = (m * e * w0**2 + k * bow) / (k - m * w0**2 + 1j * c * w0)
+
+    def rate(t: float, y: NDArray[np.float64]) -> list[float]:
+        speed, angle = w0 + a * t, w0 * t + 0.5 * a * t * t
+        f = (m * e * (speed**2 - 1j * a) + k * bow) * np.exp(1j * angle)
+        return [
+            y[2],
+            y[3],
+            (f.real - c * y[2] - k * y[0]) / m,
+            (f.imag - c * y[3] - k * y[1]) / m,
+        ]
+
+    v0 = 1j * w0 * z0
+    out = solve_ivp(
+        rate,
+        (0.0, end),
+        [z0.real, z0.imag, v0.real, v0.imag],
+        method="DOP853",
+        rtol=1e-9,
+        atol=1e-12 * max(e, rotor.bow, 1e-9),
+        dense_output=False,
+        max_step=2 * np.pi / rotor.natural_frequency / 20,
+    )
+    size = np.hypot(out.y[0], out.y[1])
+    i = int(np.argmax(size))
+    if 0 < i < size.size - 1:  # parabola through the three steps around the largest
+        p = np.polyfit(out.t[i - 1 : i + 2] - out.t[i], size[i - 1 : i + 2], 2)
+        return float(p[2] - p[1] ** 2 / (4 * p[0]))
+    return float(size[i])

@@ -1,0 +1,164 @@
+"""The command line: parse, call, print. No calculation, no heavy import at start-up."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from collections.abc import Sequence
+from pathlib import Path
+from typing import Any
+
+from reportgen import __version__
+from reportgen.errors import ReportgenError
+
+EXIT_STATUS = """\
+exit status:
+  0  done, every criterion met
+  1  the tool or a cell of the template failed
+  2  the input or the command is at fault
+  3  done, a criterion not met
+  4  verification failed
+"""
+
+
+def main(argv: Sequence[str] | None = None) -> int:
+    """Run one command and return its exit status."""
+    arguments = parser().parse_args(argv)
+    from reportgen import commands
+
+    try:
+        return commands.run(arguments)
+    except ReportgenError as error:
+        commands.print_error(error, as_json=arguments.json)
+        return error.exit_status
+    except KeyboardInterrupt:
+        print("stopped; finished packages are whole", file=sys.stderr)
+        return 130
+    except BrokenPipeError:
+        return 1
+
+
+def parser() -> argparse.ArgumentParser:
+    """Return the parser of the whole command line."""
+    top = argparse.ArgumentParser(
+        prog="reportgen",
+        description="Lateral-vibration calculation reports for rotating machines: one case file "
+        "in, one signed calculation package out.",
+        epilog=EXIT_STATUS,
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+    )
+    top.add_argument("--version", action="version", version=f"reportgen {__version__}")
+    commands = top.add_subparsers(dest="command", metavar="COMMAND", required=True)
+
+    run = _command(commands, "run", "calculate a case and leave a signed calculation package")
+    run.add_argument("cases", nargs="+", type=Path, metavar="CASE", help="case file (YAML)")
+    _add_run_options(run)
+
+    check = _command(commands, "check", "read and judge a case's inputs; run nothing")
+    check.add_argument("cases", nargs="+", type=Path, metavar="CASE", help="case file (YAML)")
+
+    schema = _command(commands, "schema", "print the JSON Schema of case files")
+    schema.add_argument("--indent", type=int, default=2, help="spaces of indentation (default 2)")
+
+    _command(commands, "templates", "list the shipped templates")
+
+    verify = _command(commands, "verify", "check a package's bytes and signatures")
+    verify.add_argument("package", type=Path, metavar="PACKAGE", help="package folder or .zip")
+    verify.add_argument(
+        "--trust",
+        type=Path,
+        action="append",
+        default=[],
+        metavar="FILE",
+        help="certificate (PEM) of an authority to trust; may be given more than once",
+    )
+
+    sign = _command(commands, "sign", "add a sign-off to a finished package")
+    sign.add_argument("package", type=Path, metavar="PACKAGE", help="package folder")
+    sign.add_argument("--role", required=True, choices=("prepared", "checked", "approved"))
+    sign.add_argument("--name", required=True, help="name of who signs")
+    sign.add_argument("--statement", default="", help="what is stated by signing")
+    sign.add_argument(
+        "--accept-hold",
+        action="append",
+        default=[],
+        metavar="ID",
+        help="open hold accepted with this sign-off, such as H2; may be given more than once",
+    )
+    _add_identity_options(sign)
+
+    identity = _command(commands, "identity", "show the signing identity that would be used")
+    _add_identity_options(identity)
+    return top
+
+
+def _command(commands: Any, name: str, words: str) -> argparse.ArgumentParser:
+    command: argparse.ArgumentParser = commands.add_parser(
+        name,
+        help=words,
+        description=words[0].upper() + words[1:] + ".",
+        epilog=EXIT_STATUS,
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+    )
+    command.add_argument(
+        "--json", action="store_true", help="print one machine-readable object instead of text"
+    )
+    return command
+
+
+def _add_run_options(run: argparse.ArgumentParser) -> None:
+    run.add_argument(
+        "-o",
+        "--output",
+        type=Path,
+        default=Path("reports"),
+        metavar="DIR",
+        help="folder that packages are left in (default: reports)",
+    )
+    run.add_argument(
+        "--allow-template",
+        action="append",
+        default=[],
+        metavar="NAME",
+        help="file name of a local template that may run; templates are code",
+    )
+    run.add_argument(
+        "--house", type=Path, metavar="FILE", help="house file: letterhead, colours, closing text"
+    )
+    run.add_argument(
+        "--no-sign", action="store_true", help="leave the package without a first signature"
+    )
+    run.add_argument(
+        "--replace-draft",
+        action="store_true",
+        help="replace a package of the same number and revision whose status is draft",
+    )
+    run.add_argument(
+        "--timeout", type=float, default=600.0, metavar="SECONDS", help="longest time for one cell"
+    )
+    run.add_argument(
+        "--kernel",
+        choices=("warm", "plain"),
+        default="plain",
+        help="warm: kernels forked from a prepared parent; plain: a new process each (default)",
+    )
+    _add_identity_options(run)
+
+
+def _add_identity_options(command: argparse.ArgumentParser) -> None:
+    command.add_argument(
+        "--identity",
+        type=Path,
+        metavar="FILE",
+        help="PKCS#12 file to sign with (default: your own self-issued identity)",
+    )
+    command.add_argument(
+        "--passphrase-file",
+        type=Path,
+        metavar="FILE",
+        help="file that holds the passphrase; otherwise REPORTGEN_PASSPHRASE or a prompt",
+    )
+
+
+if __name__ == "__main__":
+    sys.exit(main())

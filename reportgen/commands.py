@@ -1,0 +1,260 @@
+"""What each command does: call the floors below and print what came of it."""
+
+from __future__ import annotations
+
+import argparse
+import json
+import sys
+from pathlib import Path
+from typing import Any
+
+from reportgen.errors import InputError, Problem, ReportgenError
+
+
+def run(arguments: argparse.Namespace) -> int:
+    """Carry out a parsed command and return its exit status."""
+    return _COMMANDS[arguments.command](arguments)
+
+
+def print_error(error: ReportgenError, *, as_json: bool) -> None:
+    """Print an error: plain on standard error, and as an object where that was asked for."""
+    print(f"reportgen: {error}", file=sys.stderr)
+    if as_json:
+        problems = error.problems if isinstance(error, InputError) else [Problem(str(error))]
+        _print_json(
+            {
+                "error": type(error).__name__,
+                "exit_status": error.exit_status,
+                "problems": [vars(problem) for problem in problems],
+            }
+        )
+
+
+def _say(words: str) -> None:
+    if sys.stderr.isatty():
+        print(f"  {words} …", file=sys.stderr)
+
+
+def _note(words: str) -> None:
+    print(f"note: {words}", file=sys.stderr)
+
+
+def _print_json(value: Any) -> None:
+    print(json.dumps(value, indent=1, ensure_ascii=False))
+
+
+# --- run ----------------------------------------------------------------------------------
+
+
+def _run(arguments: argparse.Namespace) -> int:
+    from reportgen.run.job import Options, build
+
+    options = Options(
+        output=arguments.output,
+        allow_templates=frozenset(arguments.allow_template),
+        house=arguments.house,
+        kernel=arguments.kernel,
+        timeout=arguments.timeout,
+        replace_draft=arguments.replace_draft,
+    )
+    done = []
+    for case_path in arguments.cases:
+        one = build(case_path, options, _say)
+        if not arguments.no_sign:
+            _sign_first(arguments, one.package, one.results)
+        done.append(one)
+        if not arguments.json:
+            _print_done(one)
+    if arguments.json:
+        _print_json(
+            [
+                {
+                    "package": str(one.package),
+                    "kept": one.kept,
+                    "exit_status": one.exit_status,
+                    "conclusion": one.results["conclusion"],
+                    "criteria": one.results["criteria"],
+                    "holds": one.results["holds"],
+                }
+                for one in done
+            ]
+        )
+    return max(one.exit_status for one in done)
+
+
+def _sign_first(arguments: argparse.Namespace, package: Path, results: dict[str, Any]) -> None:
+    """Sign a fresh package as prepared; a draft is left unsigned, and that is said."""
+    from reportgen.package import sign_package, signed_roles
+
+    if results["document"]["status"] == "draft":
+        _note("the case is a draft: its package is not signed")
+        return
+    if signed_roles(package):
+        return
+    sign_package(
+        package,
+        "prepared",
+        _identity(arguments),
+        signer=results["document"]["prepared"]["name"],
+        statement="Prepared with reportgen from the case file in this package.",
+    )
+
+
+def _print_done(one: Any) -> None:
+    from rich.console import Console
+    from rich.table import Table
+    from rich.text import Text
+
+    console = Console(highlight=False, soft_wrap=False)
+    results = one.results
+    table = Table(box=None, pad_edge=False, header_style="bold")
+    for title, justify in (
+        ("criterion", "left"),
+        ("value", "right"),
+        ("limit", "right"),
+        ("margin", "right"),
+        ("verdict", "left"),
+    ):
+        table.add_column(title, justify=justify, overflow="fold")  # type: ignore[arg-type]
+    for criterion in results["criteria"]:
+        limit = criterion["limit_shown"]
+        if criterion["limit"] is not None:
+            limit = f"{criterion['sense']} {limit}"
+        table.add_row(
+            Text(criterion["title"]),
+            Text(criterion["value_shown"]),
+            Text(limit),
+            Text(criterion["margin_shown"]),
+            Text(criterion["verdict"], style="" if criterion["verdict"] == "meets" else "bold"),
+        )
+    document = results["document"]
+    console.print(Text(f"{document['number']} revision {document['revision']}: {document['title']}"))
+    console.print(table)
+    if results["holds"]:
+        console.print(Text(f"open holds: {len(results['holds'])} (page one of the report)"))
+    kept = " (unchanged, kept as it was)" if one.kept else ""
+    # a path must stay in one piece, whatever the width of the window
+    print(f"package: {one.package}{kept}")
+
+
+# --- check, schema, templates ---------------------------------------------------------------
+
+
+def _check(arguments: argparse.Namespace) -> int:
+    from reportgen.case import read_case
+
+    problems: list[Problem] = []
+    found = []
+    for path in arguments.cases:
+        try:
+            case = read_case(path)
+        except InputError as error:
+            problems += error.problems
+            continue
+        holds = case.holds()
+        found.append({"case": str(path), "template": case.template, "holds": holds})
+        if not arguments.json:
+            print(f"{path}: reads well as {case.template}; open holds: {len(holds)}")
+            for hold in holds:
+                print(f"  {hold['id']}  {hold['text']}")
+    if problems:
+        raise InputError(problems)
+    if arguments.json:
+        _print_json(found)
+    return 0
+
+
+def _schema(arguments: argparse.Namespace) -> int:
+    from reportgen.case import schema
+
+    print(json.dumps(schema(), indent=arguments.indent, ensure_ascii=False))
+    return 0
+
+
+def _templates(arguments: argparse.Namespace) -> int:
+    import nbformat
+
+    from reportgen.resources import templates
+
+    rows = []
+    for name, path in templates().items():
+        notebook = nbformat.read(path, as_version=4)
+        rows.append({"name": name, "purpose": notebook.metadata.get("purpose", "")})
+    if arguments.json:
+        _print_json(rows)
+    else:
+        for row in rows:
+            print(f"{row['name']:<22} {row['purpose']}")
+    return 0
+
+
+# --- sign, verify, identity ------------------------------------------------------------------
+
+
+def _identity_of(arguments: argparse.Namespace) -> Any:
+    from reportgen.package import identity
+
+    return identity.load(
+        arguments.identity, passphrase_file=arguments.passphrase_file, say=_note
+    )
+
+
+def _identity(arguments: argparse.Namespace) -> Any:
+    return _identity_of(arguments)
+
+
+def _sign(arguments: argparse.Namespace) -> int:
+    from reportgen.package import sign_package
+
+    path = sign_package(
+        arguments.package,
+        arguments.role,
+        _identity_of(arguments),
+        signer=arguments.name,
+        statement=arguments.statement,
+        accepted_holds=arguments.accept_hold,
+    )
+    if arguments.json:
+        _print_json({"role": arguments.role, "signature": str(path)})
+    else:
+        print(f"signed as {arguments.role}: {path}")
+    return 0
+
+
+def _verify(arguments: argparse.Namespace) -> int:
+    from reportgen.archive import verify_package
+
+    verification = verify_package(arguments.package, trust=arguments.trust)
+    if arguments.json:
+        _print_json(verification.as_dict())
+        return verification.exit_status
+    print(verification.headline)
+    width = max((len(check.kind) for check in verification.checks), default=0)
+    for check in verification.checks:
+        print(
+            f"  {'ok ' if check.ok else 'BAD'}  {check.kind:<{width}}  "
+            f"{check.subject}{': ' if check.detail else ''}{check.detail}"
+        )
+    return verification.exit_status
+
+
+def _show_identity(arguments: argparse.Namespace) -> int:
+    identity = _identity_of(arguments)
+    facts = identity.facts()
+    if arguments.json:
+        _print_json(facts)
+    else:
+        for name, value in facts.items():
+            print(f"{name}: {value}")
+    return 0
+
+
+_COMMANDS = {
+    "run": _run,
+    "check": _check,
+    "schema": _schema,
+    "templates": _templates,
+    "sign": _sign,
+    "verify": _verify,
+    "identity": _show_identity,
+}

@@ -1,0 +1,210 @@
+"""One case in, one calculation package out."""
+
+from __future__ import annotations
+
+import hashlib
+import json
+import platform
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from importlib.metadata import version
+from pathlib import Path
+from typing import Any
+
+from reportgen import __version__, resources
+from reportgen.errors import InputError, Problem
+
+_SHOWN_VERSIONS = ("numpy", "scipy", "matplotlib", "papermill", "nbconvert", "typst")
+
+
+@dataclass(frozen=True)
+class Options:
+    """How cases are run.
+
+    Parameters
+    ----------
+    output
+        Folder that packages are left in.
+    allow_templates
+        File names of local templates that may run.
+    house
+        House file, if any.
+    kernel
+        ``warm`` or ``plain``.
+    timeout
+        Longest time for one cell in s.
+    replace_draft
+        Whether a draft package of the same number and revision may be replaced.
+    """
+
+    output: Path
+    allow_templates: frozenset[str] = frozenset()
+    house: Path | None = None
+    kernel: str = "plain"
+    timeout: float = 600.0
+    replace_draft: bool = False
+
+
+@dataclass(frozen=True)
+class Done:
+    """What a run leaves: the package, its results, and whether it was already there."""
+
+    package: Path
+    results: dict[str, Any] = field(repr=False)
+    kept: bool
+
+    @property
+    def exit_status(self) -> int:
+        """0 where every criterion is met or none is stated, 3 where one is not met."""
+        verdicts = {criterion["verdict"] for criterion in self.results["criteria"]}
+        return 3 if "does not meet" in verdicts else 0
+
+
+Say = Callable[[str], None]
+
+
+def build(case_path: Path, options: Options, say: Say = lambda _: None) -> Done:
+    """Run one case and leave its package, unsigned.
+
+    Raises
+    ------
+    InputError
+        If the case, a side file or the choice of template is at fault.
+    RunError
+        If a cell of the template failed; the partial notebook is saved beside the package.
+    PublishError, PackageError
+        If the report could not be rendered, or the package not be written.
+    """
+    from reportgen.case import read_case, side_files
+
+    say(f"reading {case_path.name}")
+    case = read_case(case_path)
+    template, origin = template_of(case, case_path, options)
+    sides = side_files(case)
+    resolved = case.resolved()
+    resolved["template_record"] = {
+        "name": case.template,
+        "origin": origin,
+        "digest": "sha512:" + hashlib.sha512(template.read_bytes()).hexdigest(),
+    }
+    resolved["provenance"] = provenance(case_path, sides, resolved["template_record"])
+    payload, results = payload_of(case_path, template, resolved, sides, options, say)
+    say("writing the package")
+    from reportgen.package import write_package
+
+    document = resolved["document"]
+    written = write_package(
+        options.output,
+        f"{document['number']}_{document['revision']}",
+        payload,
+        bag_info(document),
+        replace_draft=options.replace_draft,
+    )
+    return Done(written.path, results, written.kept)
+
+
+def template_of(case: Any, case_path: Path, options: Options) -> tuple[Path, str]:
+    """Return the template's file and whether it is ours; a local one must be allowed by name."""
+    ours = resources.templates()
+    if case.template in ours:
+        return ours[case.template], "ours"
+    local = case_path.parent / case.template
+    if local.name not in options.allow_templates:
+        raise InputError(
+            Problem(
+                f"the template {case.template!r} is not one of ours",
+                f"templates are code: allow it with --allow-template {local.name}, "
+                f"or use one of {', '.join(ours)}",
+                file=str(case_path),
+                field="template",
+            )
+        )
+    if not local.is_file():
+        raise InputError(
+            Problem(
+                f"there is no file {case.template!r} beside the case",
+                "name a notebook by its path from the case's folder",
+                file=str(case_path),
+                field="template",
+            )
+        )
+    return local, "local"
+
+
+def provenance(
+    case_path: Path, sides: dict[str, bytes], template: dict[str, str]
+) -> dict[str, str]:
+    """Return what made the report, as printed in it: names, versions and digests only."""
+    record = {
+        "Template": f"{template['name']} ({template['origin']})",
+        "Template, SHA-512": _short(template["digest"].removeprefix("sha512:")),
+        f"Case file {case_path.name}, SHA-512": _short(
+            hashlib.sha512(case_path.read_bytes()).hexdigest()
+        ),
+    }
+    for name, content in sides.items():
+        record[f"Side file {name}, SHA-512"] = _short(hashlib.sha512(content).hexdigest())
+    record["reportgen"] = __version__
+    record["Python"] = platform.python_version()
+    record |= {name: version(name) for name in _SHOWN_VERSIONS}
+    return record
+
+
+def _short(digest: str) -> str:
+    """Return enough of a digest to tell files apart by eye; the manifest holds it whole."""
+    return f"{digest[:32]}…"
+
+
+def payload_of(
+    case_path: Path,
+    template: Path,
+    resolved: dict[str, Any],
+    sides: dict[str, bytes],
+    options: Options,
+    say: Say,
+) -> tuple[dict[str, bytes], dict[str, Any]]:
+    """Execute, publish, and return every file of the payload by name, and the results."""
+    from reportgen.package import how_to_check
+    from reportgen.publish import publish, read_house
+    from reportgen.run.environment import environment
+    from reportgen.run.execute import execute
+    from reportgen.run.normalise import notebook_bytes
+
+    say(f"calculating with {template.stem}")
+    executed = execute(
+        template, resolved, kernel=options.kernel, timeout=options.timeout, progress=None
+    )
+    results = executed.results
+    document = resolved["document"]
+    payload = {
+        "calculation.ipynb": notebook_bytes(executed.notebook),
+        "results.json": _json(results),
+        "case.yaml": case_path.read_bytes(),
+        **{name: content for name, content in sides.items()},
+        "inputs.json": _json(resolved),
+        "environment.json": _json(environment()),
+        "template.ipynb": template.read_bytes(),
+        "HOW-TO-CHECK.txt": how_to_check(document["number"], document["revision"]).encode(),
+    }
+    say("rendering the report")
+    house = read_house(options.house) if options.house else None
+    attached = ("case.yaml", *sides, "results.json", "calculation.ipynb")
+    report = publish(
+        executed.notebook, house=house, attachments={name: payload[name] for name in attached}
+    )
+    payload |= {"report.html": report.html, "report.pdf": report.pdf}
+    return payload, results
+
+
+def bag_info(document: dict[str, Any]) -> dict[str, str]:
+    """Return the bag's own words on what it holds."""
+    return {
+        "External-Identifier": f"{document['number']} revision {document['revision']}",
+        "External-Description": document["title"],
+        "Bagging-Date": document["date"],
+        "Bag-Software-Agent": f"reportgen {__version__}",
+    }
+
+
+def _json(value: Any) -> bytes:
+    return (json.dumps(value, indent=1, ensure_ascii=False, allow_nan=False) + "\n").encode()
