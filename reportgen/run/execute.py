@@ -23,7 +23,12 @@ from papermill.clientwrap import PapermillNotebookClient  # type: ignore[import-
 from papermill.engines import NBClientEngine, papermill_engines  # type: ignore[import-untyped]
 
 from reportgen.errors import CellError, RunError
-from reportgen.run.kernels import kernel_environment, kernel_manager, scratch_folder
+from reportgen.run.kernels import (
+    PROVISIONER,
+    kernel_environment,
+    kernel_manager,
+    scratch_folder,
+)
 from reportgen.run.normalise import normalise, notebook_bytes
 from reportgen.run.parameters import PARAMETER, injected_value, require_plain
 from reportgen.run.template import KERNEL, Template, read_template
@@ -129,7 +134,7 @@ class _Engine(NBClientEngine):  # type: ignore[misc]
         watch.total = sum(1 for cell in notebook.cells if _runs(cell))
         _require_same_case(notebook, watch.resolved)
         with scratch_folder() as scratch:
-            manager = kernel_manager(scratch)
+            manager = kernel_manager(scratch, PROVISIONER if watch.kind == "warm" else "")
             client = PapermillNotebookClient(
                 nb_man,
                 km=manager,

@@ -12,22 +12,39 @@ import tempfile
 from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass
+from importlib.metadata import EntryPoint
 from pathlib import Path
 from typing import Any
 
 from jupyter_client.kernelspec import KernelSpec, KernelSpecManager, NoSuchKernel
 from jupyter_client.manager import AsyncKernelManager
+from jupyter_client.provisioning.factory import KernelProvisionerFactory
 
 from reportgen.run.normalise import SCRATCH_PREFIX
 from reportgen.run.template import KERNEL
 
 _SOCKET_PATH_LIMIT = 103  # macOS holds 104 bytes with the closing null, Linux 108
 
-KERNEL_ARGUMENTS = ["--HistoryManager.enabled=False"]
-"""Said here since nbclient keeps history off the disk for kernels named ``python*`` only."""
+KERNEL_ARGUMENTS = ["--HistoryManager.enabled=False", "--matplotlib=inline"]
+"""No history, since nbclient keeps it off the disk for kernels named ``python*`` only; and the
+figure backend by name: a kernel whose matplotlib was imported before it started would never
+choose it, and figures would lose their pictures without a word.
+"""
+
+PROVISIONER = "reportgen-warm"
+"""Name of the provisioner of warm kernels among the entry points of jupyter_client."""
 
 ONE_THREAD = dict.fromkeys(("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"), "1")
 """One thread a kernel: the last digits then do not depend on the number of cores."""
+
+
+# What the installed entry point says, so that a source tree that is not installed works too.
+KernelProvisionerFactory.provisioners.setdefault(
+    PROVISIONER,
+    EntryPoint(
+        PROVISIONER, "reportgen.run.warm:WarmProvisioner", KernelProvisionerFactory.GROUP_NAME
+    ),
+)
 
 
 @dataclass(frozen=True)
