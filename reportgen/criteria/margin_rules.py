@@ -85,7 +85,7 @@ class AmplificationMargin:
         """Return the formula."""
         head = "" if side == "below" else "10 + "
         return (
-            rf"\min\left\{{{head}17\left(1 - \frac{{1}}{{AF - 1.5}}\right),\ "
+            rf"\min\left\{{{head}17\left(1 - \frac{{1}}{{\mathrm{{AF}} - 1.5}}\right),\ "
             rf"{self.most(side) * 100:.0f}\right\}}\,\%"
         )
 

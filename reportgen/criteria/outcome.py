@@ -134,6 +134,10 @@ class Limit:
             value, limit, margin=None, used=None, verdict="not assessed", reason=reason
         )
 
+    def met_for_want_of(self, reason: str) -> Outcome:
+        """Say that the limit is met because what it limits does not exist, and why."""
+        return self._outcome(None, None, margin=None, used=None, verdict="meets", reason=reason)
+
     def _used(self, value: float, limit: float) -> float | None:
         over, under = (value, limit) if self.sense == "at most" else (limit, value)
         if under == 0.0 or over / under < 0.0:

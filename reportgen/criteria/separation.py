@@ -6,7 +6,7 @@ import math
 from collections.abc import Sequence
 from typing import NamedTuple
 
-from reportgen.criteria.check import finite, not_negative, positive
+from reportgen.criteria.check import not_negative, positive
 from reportgen.criteria.margin_rules import MarginRule, Side
 from reportgen.criteria.outcome import ROUNDING, Limit, Outcome
 from reportgen.errors import ModelError
@@ -41,7 +41,7 @@ def separation_margins(
     rule: MarginRule,
     *,
     trip: float | None = None,
-    searched: tuple[float, float] | None = None,
+    searched: tuple[float, float | None] | None = None,
     conservative: bool = False,
 ) -> list[Outcome]:
     """Judge each critical speed against the operating range.
@@ -64,8 +64,9 @@ def separation_margins(
     trip
         Trip speed [rad/s], if there is one.
     searched
-        Lowest and highest speed [rad/s] between which critical speeds were looked for.
-        With it, "none found" is a finding; without it, nothing is known.
+        Lowest and highest speed [rad/s] between which critical speeds were looked for, the
+        highest None where the method knows them all. With it, "none found" is a finding;
+        without it, nothing is known.
     conservative
         Whether a critical speed whose amplification factor is missing or unreliable is judged
         by the largest margin the rule can ask for, instead of not at all.
@@ -217,44 +218,38 @@ def _sides_without(
     maximum: float,
     trip: float,
     rule: MarginRule,
-    searched: tuple[float, float] | None,
+    searched: tuple[float, float | None] | None,
 ) -> list[Outcome]:
     if searched is None:
         if sides:
             return []
         limit = _side_limit("within", rule)
         return [limit.not_assessed("no critical speed is stated, nor where one was looked for")]
-    low, high = (
-        not_negative("lowest speed searched", searched[0]),
-        finite("highest speed searched", searched[1]),
-    )
-    if low > high:
+    low = not_negative("lowest speed searched", searched[0])
+    high = None if searched[1] is None else positive("highest speed searched", searched[1])
+    if high is not None and low > high:
         raise ModelError(f"the search runs from {_rpm(low)} to {_rpm(high)}; low comes first")
-    reach = {"below": (minimum - low) / minimum, "above": (high - maximum) / maximum}
-    asked = {"below": rule.most("below"), "above": rule.most("above")}
-    asked["above"] = max(asked["above"], (trip - maximum) / maximum)
+    if low == 0.0 and high is None:
+        nothing = "the rotor has no critical speed"
+        return [] if sides else [_side_limit("within", rule).met_for_want_of(nothing)]
+    beyond = rule.most("above"), (trip - maximum) / maximum
+    reach: list[tuple[Side, float, float]] = [
+        ("below", (minimum - low) / minimum, rule.most("below"))
+    ]
+    if high is not None:
+        reach.append(("above", (high - maximum) / maximum, max(beyond)))
+    span = f"from {_rpm(low)} up" if high is None else f"from {_rpm(low)} to {_rpm(high)}"
     outcomes = []
-    for side in ("below", "above"):
-        if side in sides:
-            continue
+    for side, kept, asked in reach:
         limit = _side_limit(side, rule)
-        if reach[side] < asked[side]:
+        if side not in sides and kept < asked:
+            short = "which does not reach as far as a margin may be asked for"
             outcomes.append(
-                limit.not_assessed(
-                    f"critical speeds were looked for from {_rpm(low)} to {_rpm(high)}, which "
-                    "does not reach as far as a margin may be asked for",
-                    limit=asked[side],
-                )
+                limit.not_assessed(f"critical speeds were looked for {span}, {short}", limit=asked)
             )
         elif not sides:
-            outcomes.append(
-                limit.judge(
-                    reach[side],
-                    asked[side],
-                    reason=f"no critical speed from {_rpm(low)} to {_rpm(high)}; the margin is "
-                    "at least this",
-                )
-            )
+            none = f"no critical speed {span}; the margin is at least this"
+            outcomes.append(limit.judge(kept, asked, reason=none))
     return outcomes
 
 
