@@ -27,7 +27,7 @@ from reportgen.criteria.balance_planes import (
     balance_grade_in_planes,
     residual_at_bearings,
 )
-from reportgen.criteria.bearing_load import bearing_load, bearing_load_share
+from reportgen.criteria.bearings import bearing_load, bearing_load_share
 from reportgen.criteria.casing import casing_velocity, casing_velocity_zones, harmonic_velocity
 from reportgen.criteria.clearance import clearance_share, contact
 from reportgen.criteria.machine_types import MACHINE_TYPES, MachineType
@@ -41,7 +41,7 @@ from reportgen.criteria.measures import convert_amplitude
 from reportgen.criteria.outcome import Limit, Measure, Outcome, Sense, Verdict
 from reportgen.criteria.project import project_limit
 from reportgen.criteria.separation import Critical, half_power_bands_overlap, separation_margins
-from reportgen.criteria.shaft_vibration import shaft_vibration, shaft_vibration_zones
+from reportgen.criteria.shaft_zones import shaft_vibration, shaft_vibration_zones
 from reportgen.criteria.sources import SOURCES, Basis, Source, cited, project_source
 from reportgen.criteria.stability import (
     anticipated_cross_coupling,

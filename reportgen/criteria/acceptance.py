@@ -102,10 +102,10 @@ def _no_critical(peak: RecordedPeak | None) -> str:
     if peak is None:
         return "the record holds no peak"
     if peak.turn is not None and abs(peak.turn) < _LEAST_TURN:
+        turn = math.degrees(abs(peak.turn))
         return (
-            f"the phase turns by {math.degrees(abs(peak.turn)):.0f}° through the half-power band of "
-            "the peak, where one mode turns it by about 90°: the peak is not taken for a critical "
-            "speed"
+            f"the phase turns by {turn:.0f}° through the half-power band of the peak, where one "
+            "mode turns it by about 90°: the peak is not taken for a critical speed"
         )
     return ""
 

@@ -175,12 +175,15 @@ def _measure(record: Record, place: int, others: list[int]) -> RecordedPeak:
 
 
 def _top(record: Record, place: int) -> tuple[float, float]:
-    near = slice(place - 1, place + 2)
-    centre = record.speed[place]
-    curve = np.polynomial.Polynomial.fit(record.speed[near] - centre, record.amplitude[near], 2)
-    c0, c1, c2 = curve.convert().coef
-    offset = -c1 / (2.0 * c2)
-    return float(centre + offset), float(c0 + 0.5 * c1 * offset)
+    left, centre, right = (float(n) for n in record.speed[place - 1 : place + 2])
+    before, top, after = (float(a) for a in record.amplitude[place - 1 : place + 2])
+    rise, fall = (top - before) / (centre - left), (after - top) / (right - centre)
+    bend = (fall - rise) / (right - left)
+    if bend >= 0.0:  # a flat top: the reading in its middle is as good as any
+        return centre, top
+    slope = rise + bend * (centre - left)
+    offset = -slope / (2.0 * bend)
+    return centre + offset, top + 0.5 * slope * offset
 
 
 def _crossing(record: Record, place: int, level: float, step: int) -> float | None:
