@@ -88,6 +88,10 @@ def parser() -> argparse.ArgumentParser:
     _add_identity_options(sign)
 
     identity = _command(commands, "identity", "show the signing identity that would be used")
+    identity.add_argument("--name", required=True, help="name of the person who signs")
+    identity.add_argument(
+        "--pem", action="store_true", help="print the certificate, to hand to those who check"
+    )
     _add_identity_options(identity)
     return top
 

@@ -4,11 +4,24 @@ from __future__ import annotations
 
 import argparse
 import json
+import os
 import sys
+from collections.abc import Callable
+from getpass import getpass
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
-from reportgen.errors import InputError, Problem, ReportgenError
+from reportgen.errors import InputError, Problem, ReportgenError, SignatureError
+
+if TYPE_CHECKING:
+    from reportgen.package.identity import Identity, Passphrase
+
+PASSPHRASE = "REPORTGEN_PASSPHRASE"
+_STATEMENTS = {
+    "prepared": "Prepared by calculation from the case file in this package.",
+    "checked": "Checked: inputs against their sources, method, results and second computations.",
+    "approved": "Approved for the use stated in the document.",
+}
 
 
 def run(arguments: argparse.Namespace) -> int:
@@ -57,11 +70,12 @@ def _run(arguments: argparse.Namespace) -> int:
         timeout=arguments.timeout,
         replace_draft=arguments.replace_draft,
     )
+    sign = None if arguments.no_sign else _first_signature(arguments)
     done = []
     for case_path in arguments.cases:
-        one = build(case_path, options, _say)
-        if not arguments.no_sign:
-            _sign_first(arguments, one.package, one.results)
+        one = build(case_path, options, _say, sign)
+        for note in one.notes:
+            _note(note)
         done.append(one)
         if not arguments.json:
             _print_done(one)
@@ -70,7 +84,7 @@ def _run(arguments: argparse.Namespace) -> int:
             [
                 {
                     "package": str(one.package),
-                    "kept": one.kept,
+                    "notes": one.notes,
                     "exit_status": one.exit_status,
                     "conclusion": one.results["conclusion"],
                     "criteria": one.results["criteria"],
@@ -82,22 +96,23 @@ def _run(arguments: argparse.Namespace) -> int:
     return max(one.exit_status for one in done)
 
 
-def _sign_first(arguments: argparse.Namespace, package: Path, results: dict[str, Any]) -> None:
-    """Sign a fresh package as prepared; a draft is left unsigned, and that is said."""
-    from reportgen.package import sign_package, signed_roles
+def _first_signature(
+    arguments: argparse.Namespace,
+) -> Callable[[Path, dict[str, Any]], None]:
+    """Return what signs a fresh package as prepared; a draft stays unsigned, and that is said."""
 
-    if results["document"]["status"] == "draft":
-        _note("the case is a draft: its package is not signed")
-        return
-    if signed_roles(package):
-        return
-    sign_package(
-        package,
-        "prepared",
-        _identity(arguments),
-        signer=results["document"]["prepared"]["name"],
-        statement="Prepared with reportgen from the case file in this package.",
-    )
+    def sign(package: Path, results: dict[str, Any]) -> None:
+        from reportgen.package.sign import sign_package
+
+        document = results["document"]
+        if document["status"] == "draft":
+            _note("the case is a draft: its package is not signed")
+            return
+        signer = document["prepared"]["name"]
+        words = "Prepared by calculation from the case file in this package."
+        sign_package(package, "prepared", _identity(arguments, signer), words, signer)
+
+    return sign
 
 
 def _print_done(one: Any) -> None:
@@ -128,13 +143,14 @@ def _print_done(one: Any) -> None:
             Text(criterion["verdict"], style="" if criterion["verdict"] == "meets" else "bold"),
         )
     document = results["document"]
-    console.print(Text(f"{document['number']} revision {document['revision']}: {document['title']}"))
+    console.print(
+        Text(f"{document['number']} revision {document['revision']}: {document['title']}")
+    )
     console.print(table)
     if results["holds"]:
         console.print(Text(f"open holds: {len(results['holds'])} (page one of the report)"))
-    kept = " (unchanged, kept as it was)" if one.kept else ""
     # a path must stay in one piece, whatever the width of the window
-    print(f"package: {one.package}{kept}")
+    print(f"package: {one.package}")
 
 
 # --- check, schema, templates ---------------------------------------------------------------
@@ -178,7 +194,7 @@ def _templates(arguments: argparse.Namespace) -> int:
 
     rows = []
     for name, path in templates().items():
-        notebook = nbformat.read(path, as_version=4)
+        notebook = nbformat.reads(path.read_text(encoding="utf-8"), as_version=4)  # type: ignore[no-untyped-call]
         rows.append({"name": name, "purpose": notebook.metadata.get("purpose", "")})
     if arguments.json:
         _print_json(rows)
@@ -191,42 +207,60 @@ def _templates(arguments: argparse.Namespace) -> int:
 # --- sign, verify, identity ------------------------------------------------------------------
 
 
-def _identity_of(arguments: argparse.Namespace) -> Any:
+def _identity(arguments: argparse.Namespace, name: str) -> Identity:
+    """Return the identity that signs: a PKCS#12 file, or the person's own self-issued one."""
     from reportgen.package import identity
 
-    return identity.load(
-        arguments.identity, passphrase_file=arguments.passphrase_file, say=_note
-    )
+    passphrase = _passphrase(arguments)
+    if arguments.identity is not None:
+        return identity.load_pkcs12(arguments.identity, passphrase)
+    return identity.self_issued_identity(name, announce=_note)
 
 
-def _identity(arguments: argparse.Namespace) -> Any:
-    return _identity_of(arguments)
+def _passphrase(arguments: argparse.Namespace) -> Passphrase:
+    from reportgen.package import identity
+
+    if arguments.passphrase_file is not None:
+        return identity.passphrase_from_file(arguments.passphrase_file)
+    if PASSPHRASE in os.environ:
+        return identity.passphrase_from_environment(PASSPHRASE)
+
+    def ask() -> bytes:
+        if not sys.stdin.isatty():
+            raise SignatureError(
+                f"the identity needs a passphrase: set {PASSPHRASE} or use --passphrase-file"
+            )
+        return getpass("passphrase of the identity: ").encode()
+
+    return ask
 
 
 def _sign(arguments: argparse.Namespace) -> int:
-    from reportgen.package import sign_package
+    from reportgen.package.sign import sign_package
 
+    words = arguments.statement or _STATEMENTS[arguments.role]
     path = sign_package(
         arguments.package,
         arguments.role,
-        _identity_of(arguments),
-        signer=arguments.name,
-        statement=arguments.statement,
+        _identity(arguments, arguments.name),
+        words,
+        arguments.name,
         accepted_holds=arguments.accept_hold,
     )
     if arguments.json:
-        _print_json({"role": arguments.role, "signature": str(path)})
+        _print_json({"role": arguments.role, "sign_off": str(path)})
     else:
         print(f"signed as {arguments.role}: {path}")
     return 0
 
 
 def _verify(arguments: argparse.Namespace) -> int:
-    from reportgen.archive import verify_package
+    from reportgen.archive.verify import load_anchors, verify_package
 
-    verification = verify_package(arguments.package, trust=arguments.trust)
+    anchors = [anchor for path in arguments.trust for anchor in load_anchors(path)]
+    verification = verify_package(arguments.package, anchors or None)
     if arguments.json:
-        _print_json(verification.as_dict())
+        _print_json(verification.to_json())
         return verification.exit_status
     print(verification.headline)
     width = max((len(check.kind) for check in verification.checks), default=0)
@@ -239,8 +273,16 @@ def _verify(arguments: argparse.Namespace) -> int:
 
 
 def _show_identity(arguments: argparse.Namespace) -> int:
-    identity = _identity_of(arguments)
-    facts = identity.facts()
+    identity = _identity(arguments, arguments.name)
+    if arguments.pem:
+        print(identity.pem().decode(), end="")
+        return 0
+    facts = {
+        "name": identity.name,
+        "kind": "self-issued" if identity.self_issued else "issued by an authority",
+        "SHA-256 fingerprint": identity.fingerprint,
+        "kept in": identity.origin,
+    }
     if arguments.json:
         _print_json(facts)
     else:

@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
-    from reportgen.criteria import Outcome
+    from reportgen.criteria import Measure, Outcome
 
 
 @dataclass(frozen=True)
@@ -72,7 +72,7 @@ class Finding:
     quantity: str
     method: str
     where: str
-    measure: str = "none"
+    measure: Measure = "none"
     note: str = ""
     headline: bool = True
     second: SecondComputation | None = None

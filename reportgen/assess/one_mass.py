@@ -13,7 +13,6 @@ from reportgen.assess.model import Assessment, Finding, SecondComputation
 from reportgen.assess.one_mass_judge import Judging, required_range
 from reportgen.assess.one_mass_passage import PassageFindings, find_passage
 from reportgen.assess.one_mass_rotor import reference_speed_of, rotor_of
-from reportgen.assess.one_mass_stress import StressFindings, find_stress
 from reportgen.rotor import onemass
 
 if TYPE_CHECKING:
@@ -52,7 +51,6 @@ class OneMassAssessment(Assessment):
     curve: NDArray[np.complex128]
     curve_lag: NDArray[np.float64]
     passages: tuple[PassageFindings, ...]
-    stress: StressFindings | None
     grade_speed: float
     asked: str
     horizontal: bool
@@ -96,7 +94,7 @@ def assess(case: OneMassCase) -> OneMassAssessment:
         *_stability_findings(rotor),
         *(finding for p in passages for finding in p.findings()),
     )
-    top = max(*speeds.values(), 1.6 * (peak.speed if peak.exists else rotor.natural_frequency))
+    top = max(*speeds.values(), 1.6 * (peak.speed or rotor.natural_frequency))
     curve_speed = _grid(rotor, peak, 1.05 * top)
     curve = onemass.response(rotor, curve_speed)
     base = {f.id: f for f in findings}
@@ -119,19 +117,16 @@ def assess(case: OneMassCase) -> OneMassAssessment:
         curve=curve,
         curve_lag=onemass.lag_of(curve),
         passages=passages,
-        stress=find_stress(case, rotor, speeds["rated"]),
         grade_speed=reference_speed_of(case),
         asked=_asked(case),
         horizontal=case.machine.orientation == "horizontal",
     )
 
 
-def _grid(
-    rotor: onemass.OneMassRotor, peak: onemass.Peak, top: float
-) -> NDArray[np.float64]:
+def _grid(rotor: onemass.OneMassRotor, peak: onemass.Peak, top: float) -> NDArray[np.float64]:
     """Return speeds from standstill up, close together around the peak."""
     even = np.linspace(0.0, top, 301)
-    if not peak.exists:
+    if peak.speed is None:
         return even
     width = max(rotor.damping_ratio, 1e-3) * peak.speed
     near = peak.speed + width * np.sinh(np.linspace(-3.5, 3.5, 201))
@@ -156,11 +151,17 @@ def _critical_findings(
     lowest = float(second.natural_frequencies(rotor)[0])
     if rotor.support is None:
         found[0] = _with(found[0], "eigenvalue of the matrices", lowest, 1e-10, "round-off")
-    if not peak.exists:
+    if peak.speed is None or peak.amplitude is None:
         note = peak.reason
         return [
             *found,
-            _absent("critical-speed", "Critical speed (peak of the response)", r"\Omega_c", "speed", note),
+            _absent(
+                "critical-speed",
+                "Critical speed (peak of the response)",
+                r"\Omega_c",
+                "speed",
+                note,
+            ),
         ]
     at, size = second.searched_peak(rotor, peak.speed)
     factor = second.half_power_amplification(rotor, at, size) if half.factor is not None else None
@@ -193,7 +194,9 @@ def _critical_findings(
     ]
     if half.factor is None or factor is None:
         found.append(
-            _absent("amplification-factor", "Amplification factor", r"\mathit{AF}", "ratio", half.reason)
+            _absent(
+                "amplification-factor", "Amplification factor", r"\mathit{AF}", "ratio", half.reason
+            )
         )
     else:
         found.append(
@@ -340,5 +343,6 @@ def _asked(case: OneMassCase) -> str:
     parts = ["the critical speed", "the unbalance response at the running speeds"]
     if case.passages:
         parts.append("the passage through the critical speed")
-    return f"Find {', '.join(parts[:-1])} and {parts[-1]}, and judge them against the limits stated."
-
+    return (
+        f"Find {', '.join(parts[:-1])} and {parts[-1]}, and judge them against the limits stated."
+    )

@@ -166,6 +166,8 @@ class Judging:
             quantity=finding.quantity,
             measure=finding.measure,
             limit_measure=criterion.measure or finding.measure,
+            harmonic="passage" not in finding.id,
+            absent=finding.note or "the result does not exist",
             source=stated(criterion),
             title=finding.title,
         )

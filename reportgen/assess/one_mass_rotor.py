@@ -9,7 +9,13 @@ from reportgen.rotor import beams, damping
 from reportgen.rotor.onemass import IsotropicSupport, OneMassRotor
 
 if TYPE_CHECKING:
+    from reportgen.case.given import Given
     from reportgen.case.onemass import OneMassCase
+
+
+def si(given: Given | None, otherwise: float = 0.0) -> float:
+    """Return a given's value in SI, or another where the case states none."""
+    return otherwise if given is None else float(given)
 
 
 def rotor_of(case: OneMassCase) -> OneMassRotor:
@@ -17,42 +23,41 @@ def rotor_of(case: OneMassCase) -> OneMassRotor:
     given = case.rotor
     mass = float(given.mass)
     stiffness = stiffness_of(case)
-    support = given.support and IsotropicSupport(
-        stiffness=float(given.support.stiffness),
-        damping=float(given.support.damping or 0.0),
-        mass=float(given.support.mass or 0.0),
-    )
+    support = None
+    if given.support is not None:
+        support = IsotropicSupport(
+            stiffness=float(given.support.stiffness),
+            damping=si(given.support.damping),
+            mass=si(given.support.mass),
+        )
     return OneMassRotor(
         mass=mass,
         stiffness=stiffness,
         damping_ratio=damping_ratio_of(case, mass, stiffness),
         eccentricity=eccentricity_of(case),
-        internal_damping=float(given.internal_damping or 0.0),
+        internal_damping=si(given.internal_damping),
         bow=float(given.bow.amount) if given.bow else 0.0,
-        bow_angle=float(given.bow.angle or 0.0) if given.bow else 0.0,
+        bow_angle=si(given.bow.angle) if given.bow else 0.0,
         support=support,
     )
 
 
 def stiffness_of(case: OneMassCase) -> float:
     """Return the shaft stiffness at the mass in N/m, stated or from the shaft's dimensions."""
-    given = case.rotor
-    if given.stiffness is not None:
-        return float(given.stiffness)
-    shaft = given.shaft
-    area_moment = float(beams.area_moment(float(shaft.outer_diameter), float(shaft.inner_diameter or 0.0)))
-    modulus = float(shaft.modulus)
+    shaft = case.rotor.shaft
+    if shaft is None:
+        return si(case.rotor.stiffness)
+    area_moment = float(beams.area_moment(float(shaft.outer_diameter), si(shaft.inner_diameter)))
+    modulus, span, position = float(shaft.modulus), si(shaft.span), si(shaft.position)
     match shaft.support:
         case "simply supported":
-            k = beams.simply_supported(modulus, area_moment, float(shaft.span), float(shaft.position))
+            k = beams.simply_supported(modulus, area_moment, span, position)
         case "built in at both ends":
-            k = beams.built_in_both_ends(
-                modulus, area_moment, float(shaft.span), float(shaft.position)
-            )
+            k = beams.built_in_both_ends(modulus, area_moment, span, position)
         case "built in at one end":
-            k = beams.cantilever(modulus, area_moment, float(shaft.position))
+            k = beams.cantilever(modulus, area_moment, position)
         case _:
-            k = beams.overhung(modulus, area_moment, float(shaft.span), float(shaft.overhang))
+            k = beams.overhung(modulus, area_moment, span, si(shaft.overhang))
     return float(k)
 
 
@@ -65,7 +70,7 @@ def damping_ratio_of(case: OneMassCase, mass: float, stiffness: float) -> float:
         return float(damping.ratio_from_decrement(float(given.logarithmic_decrement)))
     if given.amplification_factor is not None:
         return float(damping.ratio_from_amplification(float(given.amplification_factor)))
-    return float(given.coefficient) / (2.0 * math.sqrt(mass * stiffness))
+    return si(given.coefficient) / (2.0 * math.sqrt(mass * stiffness))
 
 
 def reference_speed_of(case: OneMassCase) -> float:
@@ -80,4 +85,4 @@ def eccentricity_of(case: OneMassCase) -> float:
         return float(given.eccentricity)
     if given.amount is not None:
         return float(given.amount) / float(case.rotor.mass)
-    return float(given.grade) / reference_speed_of(case)
+    return si(given.grade) / reference_speed_of(case)

@@ -7,6 +7,7 @@ written in two real planes as matrices (steady state, eigenvalues) and integrate
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -96,7 +97,7 @@ def half_power_amplification(rotor: OneMassRotor, peak_speed: float, peak: float
     """Return N_c/(N₂ − N₁) with both half-power speeds found by bracketing."""
 
     def above(speed: float) -> float:
-        return amplitude(rotor, speed) - peak / np.sqrt(2)
+        return amplitude(rotor, speed) - peak / math.sqrt(2)
 
     low = brentq(above, 1e-3 * peak_speed, peak_speed, xtol=1e-10 * peak_speed)
     high = peak_speed * 1.001
@@ -104,7 +105,8 @@ def half_power_amplification(rotor: OneMassRotor, peak_speed: float, peak: float
         high *= 1.05
         if high > 100 * peak_speed:
             return float("nan")
-    return peak_speed / (brentq(above, peak_speed, high, xtol=1e-10 * peak_speed) - low)
+    upper = brentq(above, peak_speed, high, xtol=1e-10 * peak_speed)
+    return float(peak_speed / (upper - low))
 
 
 def ground_force(rotor: OneMassRotor, speed: float, displacement: complex) -> float:

@@ -9,10 +9,10 @@ from collections.abc import Callable
 from dataclasses import dataclass, field
 from importlib.metadata import version
 from pathlib import Path
-from typing import Any
+from typing import Any, Literal
 
 from reportgen import __version__, resources
-from reportgen.errors import InputError, Problem
+from reportgen.errors import CellError, InputError, Problem, RunError
 
 _SHOWN_VERSIONS = ("numpy", "scipy", "matplotlib", "papermill", "nbconvert", "typst")
 
@@ -40,18 +40,18 @@ class Options:
     output: Path
     allow_templates: frozenset[str] = frozenset()
     house: Path | None = None
-    kernel: str = "plain"
+    kernel: Literal["warm", "plain"] = "plain"
     timeout: float = 600.0
     replace_draft: bool = False
 
 
 @dataclass(frozen=True)
 class Done:
-    """What a run leaves: the package, its results, and whether it was already there."""
+    """What a run leaves: the package, its results, and what was particular about writing it."""
 
     package: Path
     results: dict[str, Any] = field(repr=False)
-    kept: bool
+    notes: tuple[str, ...] = ()
 
     @property
     def exit_status(self) -> int:
@@ -63,8 +63,16 @@ class Done:
 Say = Callable[[str], None]
 
 
-def build(case_path: Path, options: Options, say: Say = lambda _: None) -> Done:
-    """Run one case and leave its package, unsigned.
+def build(
+    case_path: Path,
+    options: Options,
+    say: Say = lambda _: None,
+    finish: Callable[[Path, dict[str, Any]], object] | None = None,
+) -> Done:
+    """Run one case and leave its package.
+
+    ``finish`` is called with the complete package and its results before the package appears
+    under its name, so that a first signature is there from the first moment on.
 
     Raises
     ------
@@ -76,6 +84,8 @@ def build(case_path: Path, options: Options, say: Say = lambda _: None) -> Done:
         If the report could not be rendered, or the package not be written.
     """
     from reportgen.case import read_case, side_files
+    from reportgen.package.names import package_name
+    from reportgen.package.write import write_package
 
     say(f"reading {case_path.name}")
     case = read_case(case_path)
@@ -90,17 +100,18 @@ def build(case_path: Path, options: Options, say: Say = lambda _: None) -> Done:
     resolved["provenance"] = provenance(case_path, sides, resolved["template_record"])
     payload, results = payload_of(case_path, template, resolved, sides, options, say)
     say("writing the package")
-    from reportgen.package import write_package
-
     document = resolved["document"]
-    written = write_package(
+    kept: list[str] = []
+    package = write_package(
         options.output,
-        f"{document['number']}_{document['revision']}",
+        package_name(document["number"], document["revision"]),
         payload,
         bag_info(document),
         replace_draft=options.replace_draft,
+        finish=None if finish is None else lambda folder: finish(folder, results),
+        report=kept.append,
     )
-    return Done(written.path, results, written.kept)
+    return Done(package, results, tuple(kept))
 
 
 def template_of(case: Any, case_path: Path, options: Options) -> tuple[Path, str]:
@@ -164,16 +175,17 @@ def payload_of(
     say: Say,
 ) -> tuple[dict[str, bytes], dict[str, Any]]:
     """Execute, publish, and return every file of the payload by name, and the results."""
-    from reportgen.package import how_to_check
+    from reportgen.package.howto import how_to_check
     from reportgen.publish import publish, read_house
     from reportgen.run.environment import environment
     from reportgen.run.execute import execute
     from reportgen.run.normalise import notebook_bytes
 
     say(f"calculating with {template.stem}")
-    executed = execute(
-        template, resolved, kernel=options.kernel, timeout=options.timeout, progress=None
-    )
+    try:
+        executed = execute(template, resolved, kernel=options.kernel, timeout=options.timeout)
+    except CellError as error:
+        raise _with_partial(error, resolved["document"], options.output) from error
     results = executed.results
     document = resolved["document"]
     payload = {
@@ -194,6 +206,19 @@ def payload_of(
     )
     payload |= {"report.html": report.html, "report.pdf": report.pdf}
     return payload, results
+
+
+def _with_partial(error: CellError, document: dict[str, Any], output: Path) -> RunError:
+    """Save the notebook as far as it came, and say in the error where it lies."""
+    from reportgen.package.names import package_name
+
+    if not error.partial:
+        return error
+    output.mkdir(parents=True, exist_ok=True)
+    name = package_name(document["number"], document["revision"])
+    place = output / f"{name}.failed.ipynb"
+    place.write_bytes(error.partial)
+    return RunError(f"{error}\nthe notebook as far as it ran: {place}")
 
 
 def bag_info(document: dict[str, Any]) -> dict[str, str]:

@@ -63,7 +63,7 @@ def new(rows: int = 1, columns: int = 1, height: float = 3.1, **kw: Any) -> tupl
     from matplotlib.backends.backend_agg import FigureCanvasAgg
     from matplotlib.figure import Figure
 
-    with mpl.rc_context(_STYLE):
+    with mpl.rc_context(cast("Any", _STYLE)):
         figure = Figure(figsize=(WIDTH, height), layout="constrained")
         FigureCanvasAgg(figure)
         axes = figure.subplots(rows, columns, **kw)
@@ -78,7 +78,7 @@ def drawing(figure: PlotFigure) -> tuple[str, list[Axes]]:
     """
     import matplotlib as mpl
 
-    with mpl.rc_context(_STYLE):
+    with mpl.rc_context(cast("Any", _STYLE)):
         buffer = io.StringIO()
         figure.savefig(buffer, format="svg", metadata={"Date": None, "Creator": None})
     svg = buffer.getvalue()

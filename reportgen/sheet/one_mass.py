@@ -12,7 +12,6 @@ from reportgen.sheet.blocks import Inline
 
 if TYPE_CHECKING:
     from reportgen.assess.one_mass import OneMassAssessment
-    from reportgen.assess.one_mass_passage import PassageFindings
     from reportgen.sheet.sheet import Sheet
 
 _SHAFT_FORMULAS = {
@@ -98,7 +97,9 @@ def damping(sheet: Sheet, calc: OneMassAssessment) -> None:
         )
     else:
         sheet.paragraph(
-            "Damping ratio as stated: ", {"math": r"\zeta = " + f"{calc.rotor.damping_ratio:.4g}"}, "."
+            "Damping ratio as stated: ",
+            {"math": r"\zeta = " + f"{calc.rotor.damping_ratio:.4g}"},
+            ".",
         )
 
 
@@ -141,21 +142,22 @@ def critical_speed(sheet: Sheet, calc: OneMassAssessment) -> None:
 
 def amplification(sheet: Sheet, calc: OneMassAssessment) -> None:
     """Show the amplification factor from the half-power points, or why there is none."""
-    found = calc["amplification-factor"] if "amplification-factor" in calc else None
-    if found is None or calc["critical-speed"].value is None:
+    if calc["critical-speed"].value is None:
         return
+    found = calc["amplification-factor"]
     if found.value is None:
         sheet.finding("No amplification factor", found.note)
         return
     half = calc.half_power
+    assert None not in (half.critical_speed, half.lower, half.upper)  # a factor has all three
     sheet.equation(
         "amplification-factor",
         "Amplification factor: the peak's speed over the width at 0.707 of its height",
         r"\mathit{AF} = \frac{<N_c>}{<N_2> - <N_1>}",
         {
-            "N_c": (half.critical_speed, "speed"),
-            "N_2": (half.upper, "speed"),
-            "N_1": (half.lower, "speed"),
+            "N_c": (half.critical_speed or 0.0, "speed"),
+            "N_2": (half.upper or 0.0, "speed"),
+            "N_1": (half.lower or 0.0, "speed"),
         },
         found,
     )
@@ -229,7 +231,7 @@ def eccentricity(sheet: Sheet, calc: OneMassAssessment) -> None:
                 r"\Omega": (calc.grade_speed, "speed"),
             },
             result,
-            note="The grade is the speed of the mass centre around the axis; as stated in the case.",
+            note="The grade is the speed of the mass centre around the axis.",
         )
 
 
@@ -347,83 +349,15 @@ def forces(sheet: Sheet, calc: OneMassAssessment) -> None:
         else None,
         calc["sag"],
         note="with g = 9.80665 m/s²"
-        + ("" if rotor.support is None else "; the stiffness is that of shaft and supports in series"),
+        + (
+            ""
+            if rotor.support is None
+            else "; the stiffness is that of shaft and supports in series"
+        ),
     )
-    _stress(sheet, calc)
 
 
-def passages(sheet: Sheet, calc: OneMassAssessment) -> None:
-    """Show every stated passage: table, envelope and orbit."""
-    if not sheet.case.passages:
-        sheet.paragraph("The case states no passage; none is assessed.")
-        return
-    if not calc.passages:
-        sheet.finding(
-            "Passages not assessed",
-            "The exact passage holds for rigid supports; with the flexible supports of this case "
-            "the passage needs the model by stations.",
-        )
-        return
-    for one in calc.passages:
-        _passage(sheet, calc, one)
-
-
-def _passage(sheet: Sheet, calc: OneMassAssessment, one: PassageFindings) -> None:
-    programme, peak = one.programme, one.peak
-    crossed = "yes" if peak.crossed else f"no: {peak.reason}"
-    rows: list[list[Inline]] = [
-        [
-            "Speed programme",
-            f"{sheet.show(programme.start_speed, 'speed')} to "
-            f"{sheet.show(programme.end_speed, 'speed')} at "
-            f"{sheet.show(programme.acceleration, 'acceleration_speed')}",
-        ],
-        ["Duration", sheet.show(float(one.time[-1]), "time")],
-        ["Passes the critical", crossed],
-        ["Largest amplitude, 0-peak", {"strong": sheet.show(peak.amplitude, "displacement")}],
-        [
-            "Reached at",
-            f"{sheet.show(peak.speed, 'speed')}, {sheet.show(peak.time, 'time')} after the start",
-        ],
-    ]
-    if peak.crossed:
-        share = peak.amplitude / peak.steady_peak
-        rows.append(
-            [
-                "Share of the steady peak",
-                f"{sheet.show(share, 'percent', 3)} of {sheet.show(peak.steady_peak, 'displacement')}",
-            ]
-        )
-    rows += [
-        ["Static sag", sheet.show(one.sag, "displacement")],
-        ["Runout", sheet.show(one.runout, "displacement")],
-        ["Amplitude, sag and runout together", sheet.show(one.closest, "displacement")],
-    ]
-    if one.clearance is not None:
-        rows.append(["Radial clearance", sheet.show(one.clearance, "clearance")])
-        if one.closest >= one.clearance:
-            rows.append(
-                [
-                    "Contact",
-                    {
-                        "strong": "The shaft touches. Beyond contact the linear result is void: "
-                        "the amplitude above is not what the machine would do."
-                    },
-                ]
-            )
-    sheet.table(
-        f"{one.id}-peak",
-        f"{one.name}: result of the passage",
-        [{"title": "", "width": 0.36}, {"title": "Value", "width": 0.64}],
-        rows,
-    )
-    figure, words = figures.passage_figure(sheet, calc, one)
-    sheet.figure(f"{one.id}-envelope", figure, f"{one.name}: amplitude against time and speed", words)
-    figure, words = figures.orbit_figure(sheet, one)
-    sheet.figure(f"{one.id}-orbit", figure, f"{one.name}: orbit around the largest amplitude", words)
-
-
-def series(sheet: Sheet, calc: OneMassAssessment) -> dict[str, Any]:
+def series(calc: OneMassAssessment) -> dict[str, Any]:
     """Return the arrays behind the figures, in SI, for ``results.json``."""
     out: dict[str, Any] = {
         "response": {

@@ -9,7 +9,8 @@ import numpy as np
 from reportgen.sheet.figures import BLUE, GREY, INK, LINES, ORANGE, RED, new
 
 if TYPE_CHECKING:
-    from reportgen.assess.one_mass import OneMassAssessment, PassageFindings
+    from reportgen.assess.one_mass import OneMassAssessment
+    from reportgen.assess.one_mass_passage import PassageFindings
     from reportgen.sheet.sheet import Sheet
 
 
@@ -94,9 +95,7 @@ def label(ax: Any, x: float, y: float, words: str, color: str, x_limit: float) -
     )
 
 
-def passage_figure(
-    sheet: Sheet, calc: OneMassAssessment, one: PassageFindings
-) -> tuple[Any, str]:
+def passage_figure(sheet: Sheet, calc: OneMassAssessment, one: PassageFindings) -> tuple[Any, str]:
     """Return the figure of a passage's envelope against time and against speed."""
     figure, (left, right) = new(1, 2, height=2.9, sharey=True)
     size = sheet.to_reader(np.abs(one.displacement), "displacement")
@@ -136,8 +135,7 @@ def passage_figure(
 def orbit_figure(sheet: Sheet, one: PassageFindings) -> tuple[Any, str]:
     """Return the figure of the shaft centre's path around the largest amplitude."""
     figure, ax = new(1, 1, height=3.3)
-    near = np.abs(one.orbit_time - one.peak.time) <= one.orbit_window
-    z = one.orbit[near]
+    z = one.orbit
     x, y = sheet.to_reader(z.real, "displacement"), sheet.to_reader(z.imag, "displacement")
     ax.plot(x, y, label="Shaft centre", color=BLUE, linewidth=1.1)
     ax.plot(x[:1], y[:1], "o", color=ORANGE, markersize=5)
@@ -146,10 +144,11 @@ def orbit_figure(sheet: Sheet, one: PassageFindings) -> tuple[Any, str]:
     unit = sheet.unit("displacement")
     ax.set_xlabel(f"x, horizontal ({unit})")
     ax.set_ylabel(f"y, vertical up ({unit})")
-    turns = float(np.mean(np.abs(one.speed))) and z.size
+    area = float(np.sum(x[:-1] * y[1:] - x[1:] * y[:-1]))
+    sense = "with" if area > 0 else "against"
     words = (
         f"{one.name}: path of the shaft centre around the largest amplitude, "
         f"{sheet.show(one.peak.amplitude, 'displacement')} 0-peak; "
-        "it whirls in the sense of rotation."
+        f"it whirls {sense} the sense of rotation."
     )
-    return figure, words if turns else words
+    return figure, words

@@ -40,11 +40,16 @@ class Sheet:
         The case, as its model.
     system
         Unit system of the reader, ``"si"`` or ``"us"``.
+    provenance
+        What made the report: names, versions and digests, as the run states them.
     """
 
     def __init__(self, resolved: Mapping[str, Any]) -> None:
-        self._resolved = dict(resolved)
-        self.case: Any = from_resolved(self._resolved)
+        given = dict(resolved)
+        self._template: dict[str, str] = given.pop("template_record", {})
+        self.provenance: dict[str, str] = given.pop("provenance", {})
+        self._document = given["document"]
+        self.case: Any = from_resolved(given)
         self.system: units.System = self.case.units
         self._ids: set[str] = set()
 
@@ -96,9 +101,7 @@ class Sheet:
         if isinstance(result, Finding):
             result = None if result.value is None else (result.value, result.quantity)
         self._emit(
-            equation_line(
-                block_id, title, formula, values or {}, result, self.system, note=note
-            )
+            equation_line(block_id, title, formula, values or {}, result, self.system, note=note)
         )
 
     def table(
@@ -164,8 +167,8 @@ class Sheet:
             )
         results: Results = {
             "format": 1,
-            "document": self._resolved["document"],
-            "template": self._resolved.get("template_record", {}),
+            "document": self._document,
+            "template": self._template,
             "units": self.system,
             "machine": machine_words(self.case),
             "asked": asked,
@@ -178,7 +181,10 @@ class Sheet:
             "series": dict(series or {}),
         }
         self._display(
-            {RESULTS_MIME: cast("dict[str, Any]", results), "text/plain": plain(results["conclusion"])}
+            {
+                RESULTS_MIME: cast("dict[str, Any]", results),
+                "text/plain": plain(results["conclusion"]),
+            }
         )
 
     def _result(self, finding: Finding) -> Result:
@@ -218,8 +224,10 @@ class Sheet:
             "sense": outcome.sense,
             "unit": units.QUANTITIES[outcome.quantity].si_unit,
             "margin": outcome.margin,
-            "value_shown": self.show(outcome.value, outcome.quantity) + measure * (outcome.value is not None),
-            "limit_shown": self.show(outcome.limit, outcome.quantity) + measure * (outcome.limit is not None),
+            "value_shown": self.show(outcome.value, outcome.quantity)
+            + measure * (outcome.value is not None),
+            "limit_shown": self.show(outcome.limit, outcome.quantity)
+            + measure * (outcome.limit is not None),
             "margin_shown": self.show(outcome.margin, "percent", 3),
             "verdict": outcome.verdict,
             "reason": outcome.reason,
@@ -265,12 +273,12 @@ def conclusion_words(assessment: Assessment) -> str:
         return "The case states no criterion: the results stand without a verdict."
     failed, open_ = by_verdict["does not meet"], by_verdict["not assessed"]
     if not failed and not open_:
-        return f"The rotor meets {'the one criterion' if total == 1 else f'all {total} criteria'} stated for it."
+        count = "the one criterion" if total == 1 else f"all {total} criteria"
+        return f"The rotor meets {count} stated for it."
     parts = []
     if failed:
-        parts.append(
-            f"The rotor does not meet {len(failed)} of the {total} stated criteria: {'; '.join(failed)}"
-        )
+        count = f"{len(failed)} of the {total} stated criteria"
+        parts.append(f"The rotor does not meet {count}: {'; '.join(failed)}")
     else:
         parts.append(f"The rotor meets {len(by_verdict['meets'])} of the {total} stated criteria")
     if open_:

@@ -81,7 +81,10 @@ def _criterion(sheet: Sheet, number: int, judged: Judged) -> None:
     measure = f" {outcome.measure}" if outcome.measure != "none" else ""
     if outcome.how_latex:
         sheet.equation(
-            f"{judged.id}-limit", f"Limit of criterion {number}", outcome.how_latex, note=outcome.how
+            f"{judged.id}-limit",
+            f"Limit of criterion {number}",
+            outcome.how_latex,
+            note=outcome.how,
         )
     rows: list[list[Inline]] = [
         ["Source", f"{outcome.source}" + (f", {outcome.clause}" if outcome.clause else "")],
@@ -91,10 +94,14 @@ def _criterion(sheet: Sheet, number: int, judged: Judged) -> None:
     if outcome.how and not outcome.how_latex:
         rows.append(["How the limit is found", outcome.how])
     rows += [
-        ["Value", sheet.show(outcome.value, outcome.quantity) + measure * (outcome.value is not None)],
+        [
+            "Value",
+            sheet.show(outcome.value, outcome.quantity) + measure * (outcome.value is not None),
+        ],
         [
             "Limit",
-            "–" if outcome.limit is None
+            "–"
+            if outcome.limit is None
             else f"{outcome.sense} {sheet.show(outcome.limit, outcome.quantity)}{measure}",
         ],
     ]

@@ -33,7 +33,7 @@ def test_units_follow_the_reader() -> None:
 
 
 def test_a_mark_without_a_value_is_refused() -> None:
-    with pytest.raises(PublishError, match="'wn'.*: m$"):
+    with pytest.raises(PublishError, match=r"'wn'.*: m$"):
         line("a = <k> <m>", {"k": (1.0, "stiffness")})
 
 
