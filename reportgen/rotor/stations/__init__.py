@@ -1,0 +1,1 @@
+"""The rotor by stations: finite elements, supports, gyroscopics."""
