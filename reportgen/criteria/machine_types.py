@@ -31,9 +31,9 @@ MACHINE_TYPES: tuple[MachineType, ...] = (
     ),
     MachineType(
         6.3e-3,
-        "fans; pumps; gears; machines in general; machine tools; process plant; centrifuges; "
-        "turbochargers; water turbines; aircraft gas turbines; small electric motors, and larger "
-        "ones up to 950 r/min",
+        "fans; pumps; gears; machines in general; machine tools; process plant; paper machines; "
+        "centrifuges; turbochargers; water turbines; aircraft gas turbines; small electric "
+        "motors, and larger ones up to 950 r/min",
     ),
     MachineType(
         2.5e-3,

@@ -72,7 +72,7 @@ class AmplificationMargin:
     def words(self, side: Side, amplification: float | None) -> str:
         """Return how the margin is found."""
         if amplification is None:
-            return f"by amplification factor, at most {self.most(side):.0%}"
+            return f"by amplification factor, at most {self.most(side) * 100:.0f} %"
         if amplification < 2.5:
             return f"none for an amplification factor below 2.5 (AF = {amplification:.3g})"
         head = "" if side == "below" else "10 + "
@@ -81,8 +81,10 @@ class AmplificationMargin:
             f"at most {self.most(side) * 100:.0f} %"
         )
 
-    def latex(self, side: Side) -> str:
-        """Return the formula."""
+    def latex(self, side: Side, amplification: float | None) -> str:
+        """Return the formula; none where no margin is asked for."""
+        if amplification is not None and amplification < 2.5:
+            return ""
         head = "" if side == "below" else "10 + "
         return (
             rf"\min\left\{{{head}17\left(1 - \frac{{1}}{{\mathrm{{AF}} - 1.5}}\right),\ "
@@ -138,8 +140,8 @@ class FlatMargin:
             )
         return f"{self.most(side) * 100:.3g} %, as stated"
 
-    def latex(self, side: Side) -> str:  # noqa: ARG002 - one form for both rules
-        """Return the formula: there is none."""
+    def latex(self, side: Side, amplification: float | None) -> str:  # noqa: ARG002
+        """Return no formula: there is none. The arguments are those of the other rule."""
         return ""
 
 

@@ -176,9 +176,9 @@ def _judge(
 
 def _limit(critical: Critical, title: str, side: Side, rule: MarginRule, unsure: bool) -> Limit:
     end = {
-        "below": "share of the minimum operating speed",
-        "above": "share of the maximum continuous speed",
-        "within": "zero within the operating range",
+        "below": "counted from the minimum operating speed, as a share of it",
+        "above": "counted from the maximum continuous speed, as a share of it",
+        "within": "zero for a critical speed within the operating range",
     }[side]
     factor = None if unsure else critical.amplification
     return Limit(
@@ -186,8 +186,8 @@ def _limit(critical: Critical, title: str, side: Side, rule: MarginRule, unsure:
         sense="at least",
         quantity="percent",
         source=rule.source,
-        how=f"{rule.words(side, factor)}; margin kept: {end}",
-        how_latex=rule.latex(side),
+        how=f"{rule.words(side, factor)}; {end}",
+        how_latex=rule.latex(side, factor),
     )
 
 
