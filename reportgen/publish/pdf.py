@@ -1,0 +1,170 @@
+"""The PDF report: Typst source, compiled to PDF/A-3a and PDF/UA-1 with its files attached."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping
+from datetime import UTC, datetime
+from functools import cache
+from importlib import resources
+from pathlib import PurePosixPath
+from typing import Any, cast
+
+from reportgen.errors import PublishError
+from reportgen.publish import nodes
+from reportgen.publish.characters import plain
+from reportgen.publish.formulas import Formulas
+from reportgen.publish.house import House
+from reportgen.publish.typst_writer import TypstWriter, mapping, string
+
+_STANDARDS = ["a-3a", "ua-1"]
+_TYPES = {
+    ".json": ("application/json", "data"),
+    ".yaml": ("application/yaml", "source"),
+    ".yml": ("application/yaml", "source"),
+    ".ipynb": ("application/x-ipynb+json", "source"),
+    ".csv": ("text/csv", "source"),
+    ".txt": ("text/plain", "supplement"),
+}
+_PAPERS = {"a4": "a4", "letter": "us-letter"}
+
+
+def pdf(
+    document: nodes.Document, formulas: Formulas, house: House, attachments: Mapping[str, bytes]
+) -> bytes:
+    """Return the report as PDF.
+
+    The same document gives the same bytes; times in the file are the document's date.
+
+    Raises
+    ------
+    PublishError
+        If Typst refuses or warns: the report would not be what it claims.
+    """
+    import typst
+
+    source, drawings = typst_source(document, formulas, house, list(attachments))
+    files = {"main.typ": source.encode(), **drawings}
+    files |= {f"attached/{n}": content for n, content in enumerate(attachments.values())}
+    if house.logo:
+        files[f"logo.{house.logo_kind}"] = house.logo
+    files["main"] = files.pop("main.typ")
+    try:
+        output, warnings = _compiler().compile_with_warnings(
+            input=cast(Any, files),
+            format="pdf",
+            pdf_standards=cast(Any, _STANDARDS),
+            timestamp=_noon(document.date),
+        )
+    except typst.TypstError as error:
+        raise PublishError(f"the PDF cannot be made: {error.message}") from error
+    if warnings:
+        raise PublishError(f"the PDF cannot be made without fault: {warnings[0].message}")
+    made = cast(bytes, output)
+    return made if made.endswith(b"\n") else made + b"\n"
+
+
+@cache
+def _compiler() -> Any:
+    """Return the compiler, which sees no fonts but those in its wheel."""
+    import typst
+
+    return typst.Compiler(ignore_system_fonts=True)
+
+
+def _noon(date: str) -> datetime:
+    try:
+        return datetime.fromisoformat(f"{date}T12:00:00").replace(tzinfo=UTC)
+    except ValueError as error:
+        raise PublishError(f"the document's date {date!r} is not a day of the calendar") from error
+
+
+def typst_source(
+    document: nodes.Document, formulas: Formulas, house: House, attached: list[str]
+) -> tuple[str, dict[str, bytes]]:
+    """Return the report as Typst source, and the drawings it shows by file name."""
+    writer = TypstWriter(document, formulas)
+    front = writer.blocks(document.front)
+    body = writer.blocks(document.body)
+    closing = writer.blocks(document.closing)
+    about = _about(document, house, writer)
+    fields = ", ".join(f"({writer.text(f.name)}, {writer.text(f.value)})" for f in document.fields)
+    lines = [
+        _preamble(),
+        f"#let main = rgb({string(house.main)})",
+        f"#let accent = rgb({string(house.accent)})",
+        f"#let about = {mapping(about)}",
+        "#show: report.with(about)",
+        "#{",
+        *(_attach(n, name) for n, name in enumerate(attached)),
+        f"title-block(about, ({fields},))",
+        front,
+        "contents()",
+        "pagebreak(weak: true)" if len(document.body) > 0 else "",
+        body,
+        closing,
+        _told(writer),
+        "}",
+    ]
+    return "\n".join(lines), writer.drawings
+
+
+@cache
+def _preamble() -> str:
+    return resources.files("reportgen.publish").joinpath("page/report.typ").read_text("utf-8")
+
+
+def _about(document: nodes.Document, house: House, writer: TypstWriter) -> dict[str, str]:
+    year, month, day = (int(part) for part in document.date.split("-"))
+    name = f"{document.number} revision {document.revision}"
+    logo = "none"
+    if house.logo:
+        file = f"logo.{house.logo_kind}"
+        logo = f"image({string(file)}, alt: {string(plain(house.logo_alt))}, height: 14mm)"
+    return {
+        "heading": string(plain(f"{name}: {document.title}")),
+        "author": string(plain(document.author)),
+        "description": string(plain(f"{document.machine}. Status: {document.status}.")),
+        "keywords": f"({string(plain(document.number))}, \"lateral vibration\", \"calculation\")",
+        "date": f"datetime(year: {year}, month: {month}, day: {day})",
+        "main": "main",
+        "paper": string(_PAPERS[document.paper]),
+        "draft": str(document.draft).lower(),
+        "status": writer.text(document.status),
+        "running": writer.text(f"{name}  {_clipped(document.title)}"),
+        "foot": writer.text(f"{name}, {document.status}, {document.date}"),
+        "house": writer.text(house.name) if house.name else "none",
+        "logo": logo,
+        "title": writer.text(document.title),
+        "machine": writer.text(document.machine),
+    }
+
+
+def _clipped(title: str) -> str:
+    return title if len(title) <= 70 else f"{title[:69].rstrip()}…"
+
+
+def _attach(n: int, name: str) -> str:
+    mime, relation = _TYPES.get(
+        PurePosixPath(name).suffix.lower(), ("application/octet-stream", "supplement")
+    )
+    what = {"data": "Results", "source": "Source of the calculation"}.get(relation, "Supplement")
+    return (
+        f"pdf.attach({string(plain(name))}, read({string(f'attached/{n}')}, encoding: none), "
+        f"relationship: {string(relation)}, mime-type: {string(mime)}, "
+        f"description: {string(what)})"
+    )
+
+
+def _told(writer: TypstWriter) -> str:
+    """Return the note on characters that the fonts do not show, where there are any."""
+    if not writer.code_points:
+        return ""
+    points = sorted(writer.code_points, key=lambda point: int(re.sub(r"^U\+", "", point), 16))
+    shown = ", ".join(points[:40]) + (f" and {len(points) - 40} more" if len(points) > 40 else "")
+    words = (
+        "Characters that the typefaces of this PDF do not hold, and characters that act "
+        f"instead of showing, are printed as their Unicode code points in a frame: {shown}. "
+        "The HTML report and the attached files hold the characters themselves."
+    )
+    return f"par({writer.text(words)})"
