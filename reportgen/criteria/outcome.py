@@ -72,7 +72,9 @@ class Outcome:
     def caution(self) -> str:
         """What the reader must do about the source; empty where nothing is asked."""
         if self.basis == "from memory":
-            return f"{self.source}: from memory; check against the edition you hold."
+            return (
+                f"The rule is from memory; check it against {self.source} in the edition you hold."
+            )
         return ""
 
 

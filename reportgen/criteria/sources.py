@@ -172,8 +172,8 @@ def project_source(standard: str, clause: str = "", edition: str = "") -> Source
 def cited(source: Source, *, standard: str = "", clause: str = "", edition: str = "") -> Source:
     """Return ``source`` with what a case states of it; a case's own words replace ours.
 
-    A case that names another standard than ours takes the limit from there: its basis is
-    then the project's.
+    Where a case names another standard than ours, our clause and edition go. The basis stays:
+    the rule is still the one we hold, from memory or not, and its caution with it.
     """
     other = bool(standard) and standard != source.standard
     return replace(
@@ -181,5 +181,4 @@ def cited(source: Source, *, standard: str = "", clause: str = "", edition: str 
         standard=standard or source.standard,
         clause=clause or ("" if other else source.clause),
         edition=edition or ("" if other else source.edition),
-        basis="project" if other else source.basis,
     )

@@ -83,12 +83,13 @@ def test_sources_are_told_apart_and_complete():
             assert source.edition
 
 
-def test_a_case_that_names_another_standard_takes_the_limit_from_there():
+def test_a_case_may_name_its_source_and_the_rule_keeps_its_caution():
     ours = SOURCES["petroleum-separation"]
     assert cited(ours) == ours
     assert cited(ours, standard="API 617", clause="4.8").basis == "from memory"
     other = cited(ours, standard="Specification 7")
-    assert (other.basis, other.clause, other.edition) == ("project", "", "")
+    assert (other.basis, other.clause, other.edition) == ("from memory", "", "")
+    assert cited(ours, standard="Specification 7", edition="2024").edition == "2024"
 
 
 @pytest.mark.parametrize("module", ["numpy", "scipy"])
