@@ -12,7 +12,7 @@ from pydantic import BaseModel, BeforeValidator, ConfigDict, StringConstraints, 
 from pydantic_core.core_schema import ValidationInfo
 
 from reportgen.case.given import Given, Status
-from reportgen.case.nodes import ListNode, MapNode, TextNode
+from reportgen.case.nodes import ListNode, MapNode, ShortNode, TextNode
 from reportgen.case.reading import Reading, described, fault, nearest
 
 
@@ -59,6 +59,7 @@ class Section(BaseModel):
         aliases = [words_of(name) for name in cls.model_fields]
         kept = MapNode(data.path, data.mark)
         kept.key_marks = data.key_marks
+        meant = set()
         for key, value in data.items():
             if key in aliases and value is not None:
                 kept[key] = value
@@ -69,11 +70,12 @@ class Section(BaseModel):
                 reading.report(f"{key} is empty", remedy, place, data.child(key))
                 continue
             near = nearest(key, (a for a in aliases if a not in data))
+            meant.add(near)
             remedy = f"did you mean {near!r}?" if near else f"give one of {', '.join(aliases)}"
             what = f"the key {_short(key)} is not known here"
             reading.report(what, remedy, data.key_marks[key], data.child(key[:80]))
         for key in _required(cls):
-            if key not in data:
+            if key not in data and key not in meant:
                 example = _example(cls, key)
                 remedy = f"add {key}:{f', such as {key}: {example}' if example else ''}"
                 what = f"{key} is missing"
@@ -106,13 +108,10 @@ def _handed_down(node: Any, stated: dict[str, Any]) -> Any:
         copy.extend(_handed_down(item, stated) for item in node)
         return copy
     if isinstance(node, TextNode):
-        whole = MapNode(node.path, node.mark)
-        whole["value"] = node
-        whole.key_marks["value"] = node.mark
-        node = whole
+        node = ShortNode.of(node)
     if not isinstance(node, MapNode):
         return node
-    copy_map = MapNode(node.path, node.mark)
+    copy_map = type(node)(node.path, node.mark)
     copy_map.key_marks = {**dict.fromkeys(stated, node.mark), **node.key_marks}
     copy_map.update(node)
     for key, value in stated.items():

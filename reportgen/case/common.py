@@ -38,8 +38,8 @@ def _date(text: str) -> str:
     try:
         day = datetime.date.fromisoformat(text)
     except ValueError:
-        raise problem(f"{text!r} is not a date", "write it as 2026-03-02") from None
-    if len(text) != 10 or not 1900 <= day.year <= 2200:
+        day = None
+    if day is None or text != day.isoformat() or not 1900 <= day.year <= 2200:
         raise problem(f"{text!r} is not a date", "write year-month-day, as in 2026-03-02")
     return text
 

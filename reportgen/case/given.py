@@ -10,7 +10,7 @@ from typing import Any, Literal
 from pydantic import BaseModel, ConfigDict, GetCoreSchemaHandler, GetJsonSchemaHandler
 from pydantic_core import CoreSchema, core_schema
 
-from reportgen.case.nodes import MapNode, TextNode
+from reportgen.case.nodes import MapNode, ShortNode, TextNode
 from reportgen.case.reading import Reading, already, described, fault, nearest
 from reportgen.units import QUANTITIES, Parsed, UnitError, parse_quantity, show
 
@@ -219,7 +219,7 @@ def read_given(
         If something is wrong with it; every problem is then in ``reading``.
     """
     if isinstance(data, TextNode):
-        data = as_mapping(data)
+        data = ShortNode.of(data)
     if not isinstance(data, MapNode):
         example = QUANTITIES[quantity].examples[0] if quantity else "unit"
         remedy = f"write {_an(quantity)}, such as 'value {example}'"
@@ -259,14 +259,6 @@ def read_given(
     if judge is not None:
         judge(given, data, reading)
     return given
-
-
-def as_mapping(text: TextNode) -> MapNode:
-    """Return a given that is only a text as the mapping that it is short for."""
-    node = MapNode(text.path, text.mark)
-    node["value"] = text
-    node.key_marks["value"] = text.mark
-    return node
 
 
 def _an(quantity: str) -> str:

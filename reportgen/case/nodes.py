@@ -65,6 +65,23 @@ class MapNode(dict[str, Any]):
         return getattr(value, "mark", self.key_marks.get(key, self.mark))
 
 
+class ShortNode(MapNode):
+    """A mapping written short, as only the value of its first key; its path is that value's."""
+
+    @classmethod
+    def of(cls, text: TextNode) -> ShortNode:
+        """Return what a text is short for."""
+        node = cls(text.path, text.mark)
+        node["value"] = text
+        node.key_marks["value"] = text.mark
+        return node
+
+    def child(self, key: str) -> str:
+        """Return the path of the value under a key."""
+        del key
+        return self.path
+
+
 class ListNode(list[Any]):
     """A sequence; ``marks`` holds the place of each item."""
 

@@ -152,10 +152,11 @@ def _in_words(kind: str, message: str, context: dict[str, Any], node: Any) -> tu
         return "kind is missing", "add kind:, such as kind: separation margin"
     if kind in ("list_type", "tuple_type"):
         return f"found {described(node)}", "write a list, each item after a hyphen"
-    if kind == "string_too_long":
-        return f"a text longer than {context['max_length']} characters", "shorten it"
-    if kind == "string_too_short":
-        return "the text is empty", "write it, or leave the key out"
+    if kind in ("string_too_long", "too_long"):
+        what = "a text" if isinstance(node, TextNode) else "a list"
+        return f"{what} longer than {context['max_length']}", "shorten it"
+    if kind in ("string_too_short", "too_short"):
+        return "nothing is written here", "write it, or leave the key out"
     return f"found {described(node)}: {message[:1].lower()}{message[1:]}", ""
 
 
