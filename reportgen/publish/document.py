@@ -45,7 +45,7 @@ def document(
     numbering = Numbering()
     body = tuple(_body(cells, numbering))
     numbering.results(results)
-    page_one = tuple(front.page_one(results, numbering.targets))
+    page_one = tuple(front.page_one(results))
     made = nodes.Document(
         number=str(about["number"]),
         revision=str(about["revision"]),

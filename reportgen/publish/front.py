@@ -50,17 +50,17 @@ def title_block(results: Results, house: House) -> Iterator[nodes.Field]:
             yield nodes.Field(house.field_name(key), str(value))
 
 
-def page_one(results: Results, targets: dict[str, nodes.Target]) -> Iterator[nodes.Block]:
+def page_one(results: Results) -> Iterator[nodes.Block]:
     """Yield page one below the title block."""
     if asked := inlines(results["asked"]):
         yield _heading("asked", "What was asked")
         yield nodes.Paragraph(asked)
     yield nodes.Notice("conclusion", text("Conclusion"), inlines(results["conclusion"]))
-    yield from _verdicts(results["criteria"], targets)
+    yield from _verdicts(results["criteria"])
     yield from _holds(results)
-    yield from _headline(results["results"])
     yield from _history(results["document"].get("history") or [])
     yield from _sign_off(results["document"])
+    yield from _headline(results["results"])
 
 
 def _heading(name: str, title: str) -> nodes.Heading:
@@ -77,7 +77,7 @@ def _linked(shown: str, where: str) -> nodes.Inlines:
     return (nodes.Reference(where, text(shown)),) if where and shown else text(shown)
 
 
-def _verdicts(criteria: list[Criterion], targets: dict[str, nodes.Target]) -> Iterator[nodes.Block]:
+def _verdicts(criteria: list[Criterion]) -> Iterator[nodes.Block]:
     yield _heading("verdicts", "Verdicts")
     if not criteria:
         yield nodes.Paragraph(text("The case states no criterion; nothing is judged."))
@@ -86,17 +86,16 @@ def _verdicts(criteria: list[Criterion], targets: dict[str, nodes.Target]) -> It
     for n, c in enumerate(criteria, 1):
         clause = ", ".join(part for part in (c["source"], c["clause"]) if part)
         limit = f"{c['sense']} {c['limit_shown']}" if c["limit"] is not None else c["limit_shown"]
-        reason = c["reason"] if c["verdict"] == "not assessed" else ""
-        verdict: nodes.Inlines = (nodes.Mark(c["verdict"]),)
+        title = f"{c['title']}: {c['reason']}" if _open(c) else c["title"]
         rows.append(
             nodes.Row(
                 (
-                    (nodes.Text(f"C{n}  "), *text(c["title"])),
+                    text(f"C{n}\u2002{title}"),
                     _linked(c["value_shown"], c["where"]),
                     text(limit),
                     text(c["margin_shown"]),
                     text(clause),
-                    (*verdict, nodes.LineBreak(), *text(reason)) if reason else verdict,
+                    (nodes.Mark(c["verdict"]),),
                 ),
                 anchor=f"criterion-{n}",
             )
@@ -116,6 +115,10 @@ def _verdicts(criteria: list[Criterion], targets: dict[str, nodes.Target]) -> It
     )
 
 
+def _open(criterion: Criterion) -> bool:
+    return criterion["verdict"] == "not assessed" and bool(criterion["reason"])
+
+
 def _headline(results: list[Result]) -> Iterator[nodes.Block]:
     if not results:
         return
@@ -129,7 +132,7 @@ def _headline(results: list[Result]) -> Iterator[nodes.Block]:
         rows.append(
             nodes.Row(
                 (
-                    (nodes.Text(f"R{n}  "), *text(r["title"])),
+                    text(f"R{n}\u2002{r['title']}"),
                     (nodes.Math(r["symbol"]),) if r["symbol"] else (),
                     _linked(r["shown"], r["where"]),
                     (nodes.Reference(r["where"]),) if r["where"] else (),
@@ -198,15 +201,27 @@ def _sign_off(about: dict[str, Any]) -> Iterator[nodes.Block]:
                     text(name),
                     text(str(person.get("name") or "nobody named")),
                     text(str(person.get("role") or "")),
+                    text(_signature(key, about, bool(person))),
                 )
             )
         )
     yield _plain_table(
         "sign-off",
-        (nodes.Column(text("Step")), nodes.Column(text("Name")), nodes.Column(text("Role"))),
+        (
+            nodes.Column(text("Step")),
+            nodes.Column(text("Name")),
+            nodes.Column(text("Role")),
+            nodes.Column(text("Signature")),
+        ),
         rows,
     )
     yield nodes.Paragraph(text(_DRAFT if about["status"] == "draft" else _STANDS), "small")
+
+
+def _signature(step: str, about: dict[str, Any], named: bool) -> str:
+    if about["status"] == "draft":
+        return "none: a draft"
+    return f"in the package: signatures/{step}.p7s" if named else "none"
 
 
 def closing(

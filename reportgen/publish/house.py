@@ -24,7 +24,7 @@ from typing import Any, Literal, cast
 from reportgen.errors import InputError, Problem
 
 FIELDS = {
-    "number": "Document",
+    "number": "Document number",
     "revision": "Revision",
     "status": "Status",
     "date": "Date",

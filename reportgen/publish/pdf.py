@@ -44,11 +44,10 @@ def pdf(
     import typst
 
     source, drawings = typst_source(document, formulas, house, list(attachments))
-    files = {"main.typ": source.encode(), **drawings}
+    files = {"main": source.encode(), "report.typ": _preamble(), **drawings}
     files |= {f"attached/{n}": content for n, content in enumerate(attachments.values())}
     if house.logo:
         files[f"logo.{house.logo_kind}"] = house.logo
-    files["main"] = files.pop("main.typ")
     try:
         output, warnings = _compiler().compile_with_warnings(
             input=cast(Any, files),
@@ -90,17 +89,17 @@ def typst_source(
     about = _about(document, house, writer)
     fields = ", ".join(f"({writer.text(f.name)}, {writer.text(f.value)})" for f in document.fields)
     lines = [
-        _preamble(),
-        f"#let main = rgb({string(house.main)})",
-        f"#let accent = rgb({string(house.accent)})",
+        # all names of ours stand behind rg: a bare one could hide one that formulas use
+        '#import "report.typ" as rg',
+        f"#let house-main = rgb({string(house.main)})",
+        f"#let house-accent = rgb({string(house.accent)})",
         f"#let about = {mapping(about)}",
-        "#show: report.with(about)",
+        "#show: rg.report.with(about)",
         "#{",
         *(_attach(n, name) for n, name in enumerate(attached)),
-        f"title-block(about, ({fields},))",
+        f"rg.title-block(about, ({fields},))",
         front,
-        "contents()",
-        "pagebreak(weak: true)" if len(document.body) > 0 else "",
+        "rg.contents()",
         body,
         closing,
         _told(writer),
@@ -110,8 +109,8 @@ def typst_source(
 
 
 @cache
-def _preamble() -> str:
-    return resources.files("reportgen.publish").joinpath("page/report.typ").read_text("utf-8")
+def _preamble() -> bytes:
+    return resources.files("reportgen.publish").joinpath("page/report.typ").read_bytes()
 
 
 def _about(document: nodes.Document, house: House, writer: TypstWriter) -> dict[str, str]:
@@ -127,7 +126,7 @@ def _about(document: nodes.Document, house: House, writer: TypstWriter) -> dict[
         "description": string(plain(f"{document.machine}. Status: {document.status}.")),
         "keywords": f"({string(plain(document.number))}, \"lateral vibration\", \"calculation\")",
         "date": f"datetime(year: {year}, month: {month}, day: {day})",
-        "main": "main",
+        "main": "house-main",
         "paper": string(_PAPERS[document.paper]),
         "draft": str(document.draft).lower(),
         "status": writer.text(document.status),

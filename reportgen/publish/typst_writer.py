@@ -14,7 +14,7 @@ from reportgen.publish.formulas import Formulas
 from reportgen.publish.html_writer import plain_words
 
 _SIZES = ((6, "9.5pt"), (9, "8.5pt"), (10**6, "7pt"))  # type size by number of columns
-_SHORT = 14  # characters: a column this narrow keeps its natural width
+_SHORT, _SHORT_NUMBER = 14, 24  # characters: a column this narrow keeps its natural width
 
 
 class TypstWriter:
@@ -35,25 +35,24 @@ class TypstWriter:
             case nodes.Heading():
                 body = self.inlines(block.body)
                 if not block.number:
-                    return f"front-section({string(block.anchor)}, {body})"
+                    return f"rg.front-section({string(block.anchor)}, {body})"
                 return _labelled(
-                    f"section({block.level}, {string(block.number)}, {body})", block.anchor
+                    f"rg.section({block.level}, {string(block.number)}, {body})", block.anchor
                 )
             case nodes.Paragraph():
                 body = self.inlines(block.body)
-                size = "text(9pt, fill: soft, " if block.role == "small" else ""
-                return f"par({size}{body}{')' if size else ''})"
+                return f"par(rg.small({body}))" if block.role == "small" else f"par({body})"
             case nodes.Display():
-                return f"display({self._alt(block.latex)}, {self._math(block.latex)})"
+                return f"rg.display({self._alt(block.latex)}, {self._math(block.latex)})"
             case nodes.Listing():
                 return self._listing(block)
             case nodes.Quote():
                 return f"quote(block: true, {{{self.blocks(block.body)}}})"
             case nodes.CodeBlock():
                 lines = " + linebreak() + ".join(self._text(line) for line in block.text.split("\n"))
-                return f"code-listing({lines})"
+                return f"rg.code-listing({lines})"
             case nodes.Rule():
-                return "line(length: 100%, stroke: 0.4pt + rule-line)"
+                return "line(length: 100%, stroke: 0.4pt + rg.rule-line)"
             case nodes.Table():
                 return self._table(block)
             case nodes.Equation():
@@ -61,9 +60,9 @@ class TypstWriter:
             case nodes.Figure():
                 return self._figure(block)
             case nodes.Notice():
-                colour = "main" if block.level == "conclusion" else "accent"
+                colour = "house-main" if block.level == "conclusion" else "house-accent"
                 return (
-                    f"notice({colour}, {string(block.level)}, {self.inlines(block.title)}, "
+                    f"rg.notice({colour}, {string(block.level)}, {self.inlines(block.title)}, "
                     f"{self.inlines(block.body)})"
                 )
 
@@ -88,33 +87,42 @@ class TypstWriter:
         )
         align = ", ".join(c.align for c in table.columns)
         body = (
-            f"rows-of({size}, ({self._widths(table)},), ({align},), ({head},), "
+            f"rg.rows-of({size}, ({self._widths(table)},), ({align},), ({head},), "
             f"({', '.join(rows)}{',' if rows else ''}))"
         )
         note = self.inlines(table.note) if table.note else "none"
         if table.label:
             return (
-                f"numbered-table({string(table.anchor)}, {string(table.label)}, "
+                f"rg.numbered-table({string(table.anchor)}, {string(table.label)}, "
                 f"{self.inlines(table.caption)}, {note}, {body})"
             )
-        small = f"\nblock(above: 2mm, text(9pt, fill: soft, {note}))" if table.note else ""
+        small = f"\nblock(above: 2mm, rg.small({note}))" if table.note else ""
         return body + small
 
     def _widths(self, table: nodes.Table) -> str:
-        """Return column widths: narrow columns as they are, wide ones by their content."""
-        stated = [c.width for c in table.columns]
+        """Return column widths: short columns as they are, the others by their content.
+
+        Where all are short they share the width, so that every table is as wide as the text.
+        """
+        longest, typical = [], []
+        for n, column in enumerate(table.columns):
+            lengths = [len(self._words(row.cells[n])) for row in table.rows]
+            longest.append(max([len(self._words(column.title)), *lengths]))
+            typical.append(sum(lengths) / len(lengths) if lengths else longest[-1])
+        short = [
+            length <= (_SHORT_NUMBER if column.align == "right" else _SHORT)
+            for length, column in zip(longest, table.columns, strict=True)
+        ]
+        shared = all(short)
         widths = []
         for n, column in enumerate(table.columns):
-            if stated[n] is not None:
-                widths.append(f"{stated[n] * 100:g}%" if stated[n] else "auto")
-                continue
-            lengths = [len(self._words(row.cells[n])) for row in table.rows]
-            longest = max([len(self._words(column.title)), *lengths])
-            typical = sum(lengths) / len(lengths) if lengths else longest
-            if longest <= _SHORT:
+            if column.width:
+                widths.append(f"{column.width * 100:g}%")
+            elif short[n] and not shared:
                 widths.append("auto")
             else:
-                widths.append(f"{max(min(longest, 60) * 0.5 + min(typical, 60) * 0.5, 8):.3g}fr")
+                share = (min(longest[n], 60) + min(typical[n], 60)) / 2
+                widths.append(f"{max(share, 8):.3g}fr")
         return ", ".join(widths)
 
     def _words(self, body: nodes.Inlines) -> str:
@@ -130,7 +138,7 @@ class TypstWriter:
             lines.append(f"({string(plain(said))}, {self._math(line)})")
         note = self.inlines(equation.note) if equation.note else "none"
         return _labelled(
-            f"equation-block(main, {self.inlines(equation.title)}, "
+            f"rg.equation-block(house-main, {self.inlines(equation.title)}, "
             f"{string(f'({equation.number})')}, {note}, ({', '.join(lines)},))",
             equation.anchor,
         )
@@ -139,7 +147,7 @@ class TypstWriter:
         name = f"{figure.anchor}.svg"
         self.drawings[name] = figure.svg.encode()
         return _labelled(
-            f"drawing({string(name)}, {string(plain(figure.alt))}, "
+            f"rg.drawing({string(name)}, {string(plain(figure.alt))}, "
             f"{string(f'Figure {figure.number}')}, {self.inlines(figure.caption)})",
             figure.anchor,
         )
@@ -161,9 +169,9 @@ class TypstWriter:
             case nodes.Text():
                 return self._text(inline.text)
             case nodes.Code():
-                return f"text(font: mono, size: 0.85em, {self._text(inline.text)})"
+                return f"rg.code({self._text(inline.text)})"
             case nodes.Math():
-                return f"formula({self._alt(inline.latex)}, {self._math(inline.latex)})"
+                return f"rg.formula({self._alt(inline.latex)}, {self._math(inline.latex)})"
             case nodes.Strong():
                 return f"strong({self.inlines(inline.body)})"
             case nodes.Emphasis():
@@ -175,7 +183,7 @@ class TypstWriter:
                 body = self.inlines(inline.body) if inline.body else string(target.label)
                 return f"link(label({string(target.anchor)}), {body})"
             case nodes.Mark():
-                return f"verdict({string(inline.verdict)})"
+                return f"rg.verdict({string(inline.verdict)})"
             case nodes.LineBreak():
                 return "linebreak()"
 
@@ -185,7 +193,7 @@ class TypstWriter:
         for told, piece in for_paper(words):
             if told:
                 self.code_points.add(piece)
-                parts.append(f"code-point({string(piece)})")
+                parts.append(f"rg.code-point({string(piece)})")
             else:
                 parts.append(f"[#{string(breakable(piece))}]")
         return " + ".join(parts) or "[]"
