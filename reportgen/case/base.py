@@ -8,7 +8,14 @@ from collections.abc import Iterator
 from functools import cache
 from typing import Annotated, Any, ClassVar
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict, StringConstraints, model_validator
+from pydantic import (
+    BaseModel,
+    BeforeValidator,
+    ConfigDict,
+    Field,
+    StringConstraints,
+    model_validator,
+)
 from pydantic_core.core_schema import ValidationInfo
 
 from reportgen.case.given import Given, Status
@@ -203,7 +210,12 @@ def _text(value: Any, info: ValidationInfo) -> Any:
     return " ".join(value.split()) if isinstance(value, str) else value
 
 
-Line = Annotated[str, BeforeValidator(_text), StringConstraints(min_length=1, max_length=300)]
+# a schema's reader may have taken a text such as 1.10 for a number already
+_TYPED = Field(json_schema_extra={"type": ["string", "number"]})
+
+Line = Annotated[
+    str, BeforeValidator(_text), StringConstraints(min_length=1, max_length=300), _TYPED
+]
 """A short text."""
 
 Prose = Annotated[str, BeforeValidator(_text), StringConstraints(min_length=1, max_length=4000)]

@@ -177,9 +177,9 @@ def given_schema(quantity: str) -> dict[str, Any]:
     """Return the JSON Schema of a given as a case file states it."""
     words = QUANTITIES[quantity].words if quantity else "a quantity"
     examples = list(QUANTITIES[quantity].examples) if quantity else []
-    value: dict[str, Any] = {"type": "string", "minLength": 1, "maxLength": 80}
-    if quantity == "ratio":
-        value = {"anyOf": [{"type": "number"}, value]}
+    # only a pure number stands without a unit
+    kind = ["string", "number"] if quantity in ("", "ratio") else "string"
+    value: dict[str, Any] = {"type": kind, "minLength": 1, "maxLength": 80}
     value["description"] = (
         f"{words} with its unit, one of {', '.join(examples)}"
         if examples
@@ -188,7 +188,7 @@ def given_schema(quantity: str) -> dict[str, Any]:
     properties = {
         "value": value,
         "source": {"type": "string", "maxLength": _LONGEST_SOURCE},
-        "tolerance": {"type": "string", "description": "a share such as 2 %, or an amount"},
+        "tolerance": {"type": kind, "description": "a share such as 2 %, or an amount"},
         "distribution": {"enum": list(DISTRIBUTIONS)},
         "status": {"enum": list(STATUSES)},
     }

@@ -32,7 +32,7 @@ def _input(value: Any, info: ValidationInfo) -> Any:
 
 
 Input = Annotated[
-    Given | float | Line,
+    Given | float | str,
     BeforeValidator(_input),
     Field(json_schema_extra={"anyOf": [given_schema(""), {"type": ["string", "number"]}]}),
 ]

@@ -36,5 +36,22 @@ def schema() -> dict[str, Any]:
         "$schema": "https://json-schema.org/draft/2020-12/schema",
         "title": "reportgen case file, format 1",
         "oneOf": choices,
-        "$defs": whole["$defs"],
+        "$defs": _without_nulls(whole["$defs"]),
     }
+
+
+def _without_nulls(part: Any) -> Any:
+    """Return a schema that asks for a key to be left out, not to be empty."""
+    if isinstance(part, list):
+        return [_without_nulls(item) for item in part]
+    if not isinstance(part, dict):
+        return part
+    kept = {key: _without_nulls(value) for key, value in part.items()}
+    if kept.get("default", 0) is None:
+        del kept["default"]
+    choices = kept.get("anyOf")
+    if isinstance(choices, list) and {"type": "null"} in choices:
+        rest = [choice for choice in choices if choice != {"type": "null"}]
+        del kept["anyOf"]
+        kept = {**rest[0], **kept} if len(rest) == 1 else {**kept, "anyOf": rest}
+    return kept

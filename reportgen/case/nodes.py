@@ -18,7 +18,7 @@ from reportgen.errors import InputError, Problem
 
 LARGEST_FILE = 1 << 20  # bytes; real cases are a hundredth of it
 _DEEPEST = 20
-_MOST_NODES = 50_000
+_MOST_NODES = 10_000  # a long shaft in full takes some hundreds
 _NULLS = {"", "~", "null", "Null", "NULL"}
 # Text that a reader cannot see, or that changes the order of what stands around it, has no
 # place in a document that is signed.
