@@ -14,7 +14,8 @@ from numpy.typing import ArrayLike, NDArray
 from reportgen.errors import ModelError
 from reportgen.rotor.stations.coefficients import Real
 from reportgen.rotor.stations.model import Model
-from reportgen.rotor.stations.planes import chain_sparse
+from reportgen.rotor.stations.planes import chain_sparse, lowest_roots
+from reportgen.rotor.stations.reduction import frequency_scale
 
 Whirl = Literal["forward", "backward"]
 
@@ -115,26 +116,6 @@ def _pencil(model: Model, stiffness: Real, whirl: Whirl, pedestals: bool) -> _Pe
     return _Pencil(sp.csc_matrix(K), sp.csc_matrix(N + sp.diags(mass)))
 
 
-def _lowest(pencil: _Pencil, count: int, shift: float) -> tuple[Real, Real]:
-    """Roots λ > shift of K − λN nearest above it, with vectors in columns."""
-    size = pencil.K.shape[0]
-    shifted = spl.splu(sp.csc_matrix(pencil.K - shift * pencil.N))
-    operator = spl.LinearOperator(
-        (size, size), matvec=lambda v: shifted.solve(pencil.N @ v), dtype=np.float64
-    )
-    wanted = min(count, size - 2)
-    # A fixed start makes the same input give the same digits.
-    start = np.random.default_rng(1).standard_normal(size)
-    mu, vectors = spl.eigs(
-        operator, k=wanted, which="LR", v0=start, ncv=min(size, max(4 * wanted + 8, 24))
-    )
-    order = np.argsort(-mu.real)
-    mu, vectors = mu[order], vectors[:, order]
-    # Rounding level of the largest: anything below is no root above the shift.
-    real = mu.real > 1e-12 * abs(mu[0].real)
-    return np.asarray(shift + 1 / mu[real].real), np.asarray(vectors[:, real])
-
-
 def count_below(model: Model, stiffness: Real, whirl: Whirl, speed: float, pedestals: bool) -> int:
     """Count undamped criticals below ``speed`` by the signs of an LDLᵀ elimination.
 
@@ -192,12 +173,12 @@ def undamped_criticals(
     springs = support_stiffness(model, stiffness)
     pencil = _pencil(model, springs, whirl, pedestals)
     _refuse_buckled(pencil)
-    scale = _frequency_scale(model)
+    scale = frequency_scale(model)
     # A small negative shift keeps K − λN regular when the rotor has rigid-body modes.
-    roots, vectors = _lowest(pencil, count + 4, -((1e-3 * scale) ** 2))
+    roots, vectors = lowest_roots(pencil.K, pencil.N, count + 4, -((1e-3 * scale) ** 2))
     rigid = np.abs(roots) < (1e-5 * scale) ** 2
     real = (roots > 0) & ~rigid
-    speeds, vectors = np.sqrt(roots[real]), np.real_if_close(vectors[:, real], tol=1e6).real
+    speeds, vectors = np.sqrt(roots[real]), vectors[:, real]
     speeds, vectors = speeds[:count], vectors[:, :count]
     shaft = vectors[: 2 * model.stations].T.reshape(-1, model.stations, 2)
     top = np.take_along_axis(shaft[:, :, 0], np.abs(shaft[:, :, 0]).argmax(1)[:, None], 1)
@@ -211,17 +192,6 @@ def undamped_criticals(
         rigid_body=int(rigid.sum()),
         exhausted=speeds.size < count,
     )
-
-
-def _frequency_scale(model: Model) -> float:
-    """Order of the first bending frequency of the free shaft [rad/s]."""
-    shape = np.sin(np.pi * model.positions / model.positions[-1])
-    slope = np.gradient(shape, model.positions) if model.stations > 2 else np.zeros(2)
-    if model.stations <= 2:
-        shape = np.array([1.0, -1.0])
-    q = np.column_stack([shape, slope])
-    top = float((q * model.stiffness.times(q)).sum())
-    return float(np.sqrt(abs(top) / (q * model.mass.times(q)).sum()))
 
 
 def _refuse_buckled(pencil: _Pencil) -> None:
