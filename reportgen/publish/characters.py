@@ -51,6 +51,20 @@ def printable(character: str) -> bool:
     return at >= 0 and code <= ends[at]
 
 
+def rare(text: str) -> set[str]:
+    """Return the code points of a page's characters that not every system can show."""
+    return {
+        f"U+{ord(c):04X}" for c in set(text) if ord(c) > 0x24F and not printable(c) and not acts(c)
+    }
+
+
+def listed(points: set[str], most: int = 40) -> str:
+    """Return code points in order, as words; beyond ``most`` their number."""
+    ordered = sorted(points, key=lambda point: int(point[2:], 16))
+    rest = len(ordered) - most
+    return ", ".join(ordered[:most]) + (f" and {rest} more" if rest > 0 else "")
+
+
 def breakable(text: str) -> str:
     """Return a text in which long words may break between any two characters."""
     return re.sub(

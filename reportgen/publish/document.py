@@ -40,7 +40,7 @@ def document(
         reference leads nowhere.
     """
     cells = list(notebook["cells"])
-    results = _results(cells)
+    results = results_of(cells)
     about = results["document"]
     numbering = Numbering()
     body = tuple(_body(cells, numbering))
@@ -66,7 +66,8 @@ def document(
     return made
 
 
-def _results(cells: list[Mapping[str, Any]]) -> Results:
+def results_of(cells: list[Mapping[str, Any]]) -> Results:
+    """Return the results that one of the cells holds."""
     found = [data for cell in cells for data in _outputs(cell, RESULTS_MIME)]
     if len(found) != 1:
         raise PublishError(
@@ -101,8 +102,8 @@ def _body(cells: list[Mapping[str, Any]], numbering: Numbering) -> Iterator[node
             for block in markdown.blocks(next(trees), numbering.section):
                 yield numbering.prose_table(block) if isinstance(block, nodes.Table) else block
         else:
-            for block in _outputs(cell, BLOCK_MIME):
-                yield converted(block, numbering)
+            for data in _outputs(cell, BLOCK_MIME):
+                yield converted(data, numbering)
 
 
 def _code(cells: list[Mapping[str, Any]]) -> Iterator[str]:

@@ -111,7 +111,9 @@ def _fault(tag: str, name: str, value: str) -> str:
     if name.lower().startswith("on"):
         return f"a handler ({name})"
     if name == "href":
-        own = value.startswith("#") or (tag == "image" and value.startswith("data:image/png;base64,"))
+        own = value.startswith("#") or (
+            tag == "image" and value.startswith("data:image/png;base64,")
+        )
         return "" if own else f"a link to {value[:40]!r}"
     if "url(" in _URL.sub("", value) or "javascript:" in value.lower():
         return f"a link to {value[:40]!r}"

@@ -70,7 +70,7 @@ def _heading(name: str, title: str) -> nodes.Heading:
 def _plain_table(
     name: str, columns: Iterable[nodes.Column], rows: Iterable[nodes.Row], note: str = ""
 ) -> nodes.Table:
-    return nodes.Table(f"{name}-table", "", (), tuple(columns), tuple(rows), text(note), True)
+    return nodes.Table(f"{name}-table", "", (), tuple(columns), tuple(rows), text(note), True, True)
 
 
 def _linked(shown: str, where: str) -> nodes.Inlines:
@@ -161,11 +161,13 @@ def _holds(results: Results) -> Iterator[nodes.Block]:
         return
     yield _plain_table(
         "holds",
-        (nodes.Column(text("Hold")), nodes.Column(text("Kind")), nodes.Column(text("What is open"))),
         (
-            nodes.Row(
-                (text(h["id"]), text(_HOLD_KINDS.get(h["kind"], h["kind"])), text(h["text"]))
-            )
+            nodes.Column(text("Hold")),
+            nodes.Column(text("Kind")),
+            nodes.Column(text("What is open")),
+        ),
+        (
+            nodes.Row((text(h["id"]), text(_HOLD_KINDS.get(h["kind"], h["kind"])), text(h["text"])))
             for h in results["holds"]
         ),
     )
@@ -184,7 +186,9 @@ def _history(history: list[dict[str, Any]]) -> Iterator[nodes.Block]:
             nodes.Column(text("By")),
         ),
         (
-            nodes.Row(tuple(text(str(entry.get(key) or "")) for key in ("revision", "date", "text", "by")))
+            nodes.Row(
+                tuple(text(str(entry.get(key) or "")) for key in ("revision", "date", "text", "by"))
+            )
             for entry in history
         ),
     )

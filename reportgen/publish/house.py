@@ -94,7 +94,9 @@ def read_house(path: Path | str) -> House:
     try:
         raw = path.read_bytes()
         if len(raw) > _MOST:
-            raise InputError(Problem(f"{len(raw)} bytes are too many for a house file", file=str(path)))
+            raise InputError(
+                Problem(f"{len(raw)} bytes are too many for a house file", file=str(path))
+            )
         data = YAML(typ="rt").load(raw.decode("utf-8"))
     except OSError as error:
         raise InputError(Problem(f"cannot be read: {error.strerror}", file=str(path))) from error
@@ -202,7 +204,7 @@ class _Reader:
     def colours(self) -> dict[str, str]:
         found = self.mapping("colours")
         self.names("colours", found, ("main", "accent"))
-        kept = {}
+        kept: dict[str, str] = {}
         for name in ("main", "accent"):
             if name not in found:
                 continue

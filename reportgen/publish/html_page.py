@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING
 
 from reportgen.errors import PublishError
 from reportgen.publish import nodes
-from reportgen.publish.characters import plain
+from reportgen.publish.characters import listed, plain, rare
 from reportgen.publish.formulas import Formulas
 from reportgen.publish.house import House
 from reportgen.publish.html_writer import HtmlWriter, data_uri, text
@@ -30,46 +30,58 @@ def html(document: nodes.Document, formulas: Formulas, house: House) -> bytes:
         If the file would exceed 5 MB.
     """
     writer = HtmlWriter(document, formulas)
-    style = _page("report.css").replace("#23395b", house.main).replace("#8a4b08", house.accent)
+    style = _style(house)
     script = _page("report.js")
-    page = _template().render(
-        doc=document,
-        house=house,
-        heading=plain(f"{document.number} revision {document.revision}: {document.title}"),
-        author=plain(document.author),
-        style=style,
-        style_hash=_hash(style),
-        script=script,
-        script_hash=_hash(script),
-        logo=data_uri(house.logo, house.logo_kind) if house.logo else "",
-        house_name=text(house.name),
-        number=text(document.number),
-        revision=text(document.revision),
-        status=text(document.status),
-        title=text(document.title),
-        machine=text(document.machine),
-        fields=[{"name": text(f.name), "value": text(f.value)} for f in document.fields],
-        contents=[
-            {
-                "level": h.level,
-                "anchor": h.anchor,
-                "number": h.number,
-                "title": writer.inlines(h.body),
-            }
-            for h in document.headings()
-            if h.level <= 2
-        ],
-        front=writer.blocks(document.front),
-        body=writer.blocks(document.body),
-        closing=writer.blocks(document.closing),
-        code=[text(cell, lines=True) for cell in document.code],
-    ).encode()
+    front, body = writer.blocks(document.front), writer.blocks(document.body)
+    page = (
+        _template()
+        .render(
+            doc=document,
+            house=house,
+            heading=plain(f"{document.number} revision {document.revision}: {document.title}"),
+            author=plain(document.author),
+            style=style,
+            style_hash=_hash(style),
+            script=script,
+            script_hash=_hash(script),
+            logo=data_uri(house.logo, house.logo_kind) if house.logo else "",
+            house_name=text(house.name),
+            number=text(document.number),
+            revision=text(document.revision),
+            status=text(document.status),
+            title=text(document.title),
+            machine=text(document.machine),
+            fields=[{"name": text(f.name), "value": text(f.value)} for f in document.fields],
+            contents=[
+                {
+                    "level": h.level,
+                    "anchor": h.anchor,
+                    "number": h.number,
+                    "title": writer.inlines(h.body),
+                }
+                for h in document.headings()
+                if h.level <= 2
+            ],
+            front=front,
+            body=body,
+            told=listed(rare(front + body + document.title + document.machine)),
+            closing=writer.blocks(document.closing),
+            code=[text(cell, lines=True) for cell in document.code],
+        )
+        .encode()
+    )
     if len(page) > _MOST:
         raise PublishError(
             f"the HTML report would have {len(page) / 1e6:.1f} MB, more than {_MOST / 1e6:.0f}; "
             "draw figures with fewer points"
         )
     return page
+
+
+def _style(house: House) -> str:
+    font = resources.files("reportgen.publish").joinpath("page/math.woff2").read_bytes()
+    style = _page("report.css").replace("#23395b", house.main).replace("#8a4b08", house.accent)
+    return style.replace("%MATH%", f"data:font/woff2;base64,{base64.b64encode(font).decode()}")
 
 
 def _page(name: str) -> str:

@@ -57,7 +57,9 @@ class HtmlWriter:
             case nodes.Quote():
                 return f"<blockquote>{''.join(map(self.block, block.body))}</blockquote>"
             case nodes.CodeBlock():
-                return self._scrolled("code", f"<pre><code>{text(block.text, lines=True)}</code></pre>")
+                return self._scrolled(
+                    "code", f"<pre><code>{text(block.text, lines=True)}</code></pre>"
+                )
             case nodes.Rule():
                 return "<hr>"
             case nodes.Table():
@@ -101,7 +103,8 @@ class HtmlWriter:
         if table.label:
             caption = f"<caption><b>{table.label}</b> {self.inlines(table.caption)}</caption>"
         head = "".join(
-            f'<th scope="col" class="{c.align}">{self.inlines(c.title)}</th>'
+            f'<th scope="col"{_role("columnheader") if table.stacks else ""} class="{c.align}">'
+            f"{self.inlines(c.title)}</th>"
             if c.title
             else f'<td class="{c.align}"></td>'
             for c in table.columns
@@ -109,21 +112,29 @@ class HtmlWriter:
         rows = "".join(self._row(table, row) for row in table.rows)
         note = f'<p class="note">{self.inlines(table.note)}</p>' if table.note else ""
         anchor = f' id="{table.anchor}"' if table.anchor else ""
+        kind, role = ("table stack", _role("table")) if table.stacks else ("table", "")
+        groups = _role("rowgroup") if table.stacks else ""
         return (
-            f'<div class="table"{anchor}><div class="scroll"><table>{caption}'
-            f"<thead><tr>{head}</tr></thead><tbody>{rows}</tbody></table></div>{note}</div>"
+            f'<div class="{kind}"{anchor}><div class="scroll"><table{role}>{caption}'
+            f"<thead{groups}><tr{_role('row') if groups else ''}>{head}</tr></thead>"
+            f"<tbody{groups}>{rows}</tbody></table></div>{note}</div>"
         )
 
     def _row(self, table: nodes.Table, row: nodes.Row) -> str:
         anchor = f' id="{row.anchor}"' if row.anchor else ""
+        role = _role("row") if table.stacks else ""
         cells = []
         for n, (cell, column) in enumerate(zip(row.cells, table.columns, strict=True)):
             inner = self.inlines(cell)
             if n == 0 and table.row_header and inner:
-                cells.append(f'<th scope="row" class="{column.align}">{inner}</th>')
+                named = _role("rowheader") if table.stacks else ""
+                cells.append(f'<th scope="row"{named} class="{column.align}">{inner}</th>')
             else:
-                cells.append(f'<td class="{column.align}">{inner}</td>')
-        return f"<tr{anchor}>{''.join(cells)}</tr>"
+                named = ""
+                if table.stacks:
+                    named = f'{_role("cell")} data-name="{escape(self.words(column.title))}"'
+                cells.append(f'<td{named} class="{column.align}">{inner}</td>')
+        return f"<tr{anchor}{role}>{''.join(cells)}</tr>"
 
     # --- equations and figures ------------------------------------------------------------
 
@@ -135,7 +146,8 @@ class HtmlWriter:
         name = f"Equation {equation.number}: {self.words(equation.title)}"
         note = f'<p class="note">{self.inlines(equation.note)}</p>' if equation.note else ""
         return (
-            f'<div class="equation" id="{equation.anchor}" role="group" aria-label="{escape(name)}">'
+            f'<div class="equation" id="{equation.anchor}" role="group" '
+            f'aria-label="{escape(name)}">'
             f'<p class="equation-title">{self.inlines(equation.title)}</p>'
             f'<div class="equation-body"><div class="scroll">{lines}</div>'
             f'<p class="equation-number">({equation.number})</p></div>{note}</div>'
@@ -146,10 +158,10 @@ class HtmlWriter:
         reading = data = ""
         if any(axes.curves for axes in figure.axes):
             name = f"{self.document.number}-{figure.anchor}.csv"
-            href = "data:text/csv;charset=utf-8," + quote(_csv(figure), safe=",.-+:() ")
+            href = "data:text/csv;charset=utf-8," + quote(_csv(figure), safe=",.-+:()")
             data = (
                 f'<a class="data" download="{escape(_file_name(name))}" '
-                f'href="{escape(href.replace(" ", "%20"))}">Data of Figure {figure.number} (CSV)</a>'
+                f'href="{escape(href)}">Data of Figure {figure.number} (CSV)</a>'
             )
             reading = (
                 f'<script type="application/json" class="axes">{_json(_axes(figure))}</script>'
@@ -179,9 +191,8 @@ class HtmlWriter:
             case nodes.Emphasis():
                 return f"<em>{self.inlines(inline.body)}</em>"
             case nodes.Link():
-                return (
-                    f'<a href="{escape(inline.url)}" rel="noreferrer">{self.inlines(inline.body)}</a>'
-                )
+                body = self.inlines(inline.body)
+                return f'<a href="{escape(inline.url)}" rel="noreferrer">{body}</a>'
             case nodes.Reference():
                 target = self.document.targets[inline.target]
                 body = self.inlines(inline.body) or text(target.label)
@@ -233,6 +244,11 @@ def data_uri(content: bytes, kind: str) -> str:
     """Return an image as an address that holds it."""
     mime = {"svg": "image/svg+xml", "png": "image/png"}[kind]
     return f"data:{mime};base64,{base64.b64encode(content).decode()}"
+
+
+def _role(name: str) -> str:
+    """Return a role spelled out: a table that a narrow screen stacks loses its own."""
+    return f' role="{name}"'
 
 
 def _axes(figure: nodes.Figure) -> list[dict[str, Any]]:

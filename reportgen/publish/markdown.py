@@ -22,7 +22,8 @@ def blocks(trees: list[Tree], section: Section) -> Iterator[nodes.Block]:
 
 
 def _block(tree: Tree, section: Section) -> Iterator[nodes.Block]:
-    kind, content = tree["t"], tree.get("c")
+    kind: str = tree["t"]
+    content: Any = tree.get("c")
     match kind:
         case "Header":
             level, (anchor, _, _), title = content
@@ -111,7 +112,8 @@ def inlines(content: list[Tree]) -> nodes.Inlines:
 
 
 def _inline(tree: Tree) -> Iterator[nodes.Inline]:
-    kind, content = tree["t"], tree.get("c")
+    kind: str = tree["t"]
+    content: Any = tree.get("c")
     match kind:
         case "Str":
             yield nodes.Text(str(content))
@@ -120,21 +122,21 @@ def _inline(tree: Tree) -> Iterator[nodes.Inline]:
         case "LineBreak":
             yield nodes.LineBreak()
         case "Strong":
-            yield nodes.Strong(inlines(content or []))
+            yield nodes.Strong(inlines(content))
         case "Emph":
-            yield nodes.Emphasis(inlines(content or []))
+            yield nodes.Emphasis(inlines(content))
         case "Code":
-            yield nodes.Code((content or [[], ""])[1])
+            yield nodes.Code(content[1])
         case "Math":
-            yield nodes.Math((content or [{}, ""])[1].strip())
+            yield nodes.Math(content[1].strip())
         case "RawInline":
-            raw = (content or ["", ""])[1]
+            raw = content[1]
             if not raw.startswith("<!--"):
                 yield nodes.Text(raw)
         case "Link":
-            yield _link(content or [])
+            yield _link(content)
         case "Span":
-            yield from inlines((content or [[], []])[1])
+            yield from inlines(content[1])
         case _:
             raise PublishError(f"a markdown cell holds {kind}, which a report does not print")
 

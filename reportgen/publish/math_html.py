@@ -17,6 +17,14 @@ _KEPT: dict[str, tuple[str, ...]] = {
 }  # fmt: skip
 
 
+_STANDING = {
+    "\u0307": "\u02d9", "\u0308": "\u00a8", "\u0302": "\u02c6", "\u0303": "\u02dc",
+    "\u0304": "\u00af", "\u0306": "\u02d8", "\u030c": "\u02c7", "\u0300": "`",
+    "\u0301": "\u00b4", "\u030a": "\u02da",
+}  # fmt: skip
+"""Accents that stand by themselves; browsers set those that combine beside their letter."""
+
+
 def math(tree: Element, words: str, display: bool) -> str:
     """Return a formula as a ``math`` element; ``words`` tells it to who cannot see it."""
     shape = ' display="block"' if display else ""
@@ -36,5 +44,8 @@ def _element(element: Element) -> str:
         if "padding" in (element.get("style") or ""):
             classes.append("pair")
         shown += f' class="{" ".join(classes)}"'
-    inner = escape(plain(element.text or ""), quote=False) if not len(element) else ""
+    own = element.text or "" if not len(element) else ""
+    if tag == "mo" and own in _STANDING:
+        own = _STANDING[own]
+    inner = escape(plain(own), quote=False)
     return f"<{tag}{shown}>{inner}{''.join(_element(child) for child in element)}</{tag}>"

@@ -217,7 +217,7 @@ def _scripts(element: Element) -> str:
     if _text(base) in _MOVING:
         inner = f"scripts({inner})"
     attached = ",".join(f"{n}:{_set(s)}" for n, s in zip(names, scripts, strict=True))
-    return f'attach({inner or chr(34) * 2},{attached})'
+    return f"attach({inner or chr(34) * 2},{attached})"
 
 
 def _limits(element: Element) -> str:

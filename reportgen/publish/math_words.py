@@ -52,7 +52,9 @@ def _row(children: list[Element]) -> str:
     for child in children:
         text = "".join(child.itertext())
         letter = child.tag == "mi" and child.get("mathvariant") == "normal" and text.isalpha()
-        out += ("" if letter and last else " ") + (text if letter and len(text) == 1 and text.isascii() else _say(child))
+        out += ("" if letter and last else " ") + (
+            text if letter and len(text) == 1 and text.isascii() else _say(child)
+        )
         last = letter
     return out
 
@@ -76,12 +78,14 @@ def _scripted(element: Element) -> str:
         case "msup":
             if said[0] in _ENDINGS:
                 return f"{_group(base)} {_ENDINGS[said[0]]}"
-            return f"{_group(base)} {said[0]}" if "prime" in said[0] else (
-                f"{_group(base)} to the power {said[0]}"
+            return (
+                f"{_group(base)} {said[0]}"
+                if "prime" in said[0]
+                else (f"{_group(base)} to the power {said[0]}")
             )
         case "msubsup":
             return f"{subject} sub {said[0]} to the power {said[1]}"
-        case "mover" if (mark := _ACCENTS.get("".join(scripts[0].itertext()))):
+        case "mover" if mark := _ACCENTS.get("".join(scripts[0].itertext())):
             return f"{subject} {mark}"
         case "mover":
             return f"{subject} with {said[0]} above"

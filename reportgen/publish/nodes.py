@@ -140,6 +140,7 @@ class Table:
     rows: tuple[Row, ...]
     note: Inlines = ()
     row_header: bool = False
+    stacks: bool = False  # on a narrow screen each row stands as a list of named values
 
 
 @dataclass(frozen=True, slots=True)

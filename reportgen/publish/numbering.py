@@ -21,7 +21,7 @@ class Numbering:
         self._headings: dict[str, nodes.Target] = {}
 
     def section(self, level: int, name: str, body: nodes.Inlines) -> nodes.Heading:
-        """Number a section; a level that skips one is taken as the next that fits."""
+        """Return a section with its number; a level that skips one is taken as the next that fits."""
         level = min(level, len(self._sections) + 1)
         kept = [*self._sections, 0][:level]
         kept[-1] += 1
@@ -32,7 +32,7 @@ class Numbering:
         return nodes.Heading(level, target.anchor, number, body)
 
     def block(self, kind: str, block_id: str) -> tuple[str, int]:
-        """Number a table, figure or equation; return its anchor and number."""
+        """Count a table, figure or equation; return its anchor and number."""
         self._counts[kind] += 1
         number = self._counts[kind]
         target = nodes.Target(f"{kind}-{number}", f"{_NAMES[kind]} {number}")
@@ -43,26 +43,26 @@ class Numbering:
         return target.anchor, number
 
     def prose_table(self, table: nodes.Table) -> nodes.Table:
-        """Number a table that the prose holds, if it has a caption."""
+        """Return a table of the prose with its number, if it has a caption."""
         if not table.caption:
             return table
         anchor, number = self.block("table", "")
         return replace(table, anchor=anchor, label=f"Table {number}")
 
     def results(self, results: Results) -> None:
-        """Number criteria and results; a result named as its block is that block.
+        """Count criteria and results; a result named as its block is that block.
 
         Called after the body: what a block is named comes first, then criteria, results
         and the names that sections have from their titles.
         """
         for n, criterion in enumerate(results["criteria"], 1):
             target = nodes.Target(f"criterion-{n}", f"criterion C{n}")
-            if self.targets.setdefault(criterion["id"], target) is not target:
-                if criterion["where"] != criterion["id"]:
-                    raise PublishError(
-                        f"a block and a criterion are both named {criterion['id']!r}; "
-                        "give each its own name"
-                    )
+            taken = self.targets.setdefault(criterion["id"], target) is not target
+            if taken and criterion["where"] != criterion["id"]:
+                raise PublishError(
+                    f"a block and a criterion are both named {criterion['id']!r}; "
+                    "give each its own name"
+                )
         for n, result in enumerate(results["results"], 1):
             self.targets.setdefault(result["id"], nodes.Target(f"result-{n}", f"result R{n}"))
         for name, target in self._headings.items():

@@ -13,9 +13,7 @@ from xml.etree import ElementTree
 
 from reportgen.errors import PublishError
 
-PROSE = (
-    "commonmark+tex_math_dollars+pipe_tables+attributes+gfm_auto_identifiers"
-)
+PROSE = "commonmark+tex_math_dollars+pipe_tables+attributes+gfm_auto_identifiers"
 """What templates are written in: the prose that Jupyter shows, with math and tables."""
 
 _MATHML = "{http://www.w3.org/1998/Math/MathML}"
@@ -28,7 +26,7 @@ def executable() -> str:
     pypandoc's own search starts pandoc several times to compare versions, which costs
     more than the whole conversion.
     """
-    import pypandoc
+    import pypandoc  # type: ignore[import-untyped]
 
     for name in ("pandoc", "pandoc.exe"):
         inside = Path(pypandoc.__file__).parent / "files" / name

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Mapping
 from datetime import UTC, datetime
 from functools import cache
@@ -12,7 +11,7 @@ from typing import Any, cast
 
 from reportgen.errors import PublishError
 from reportgen.publish import nodes
-from reportgen.publish.characters import plain
+from reportgen.publish.characters import listed, plain
 from reportgen.publish.formulas import Formulas
 from reportgen.publish.house import House
 from reportgen.publish.typst_writer import TypstWriter, mapping, string
@@ -124,7 +123,7 @@ def _about(document: nodes.Document, house: House, writer: TypstWriter) -> dict[
         "heading": string(plain(f"{name}: {document.title}")),
         "author": string(plain(document.author)),
         "description": string(plain(f"{document.machine}. Status: {document.status}.")),
-        "keywords": f"({string(plain(document.number))}, \"lateral vibration\", \"calculation\")",
+        "keywords": f'({string(plain(document.number))}, "lateral vibration", "calculation")',
         "date": f"datetime(year: {year}, month: {month}, day: {day})",
         "main": "house-main",
         "paper": string(_PAPERS[document.paper]),
@@ -159,8 +158,7 @@ def _told(writer: TypstWriter) -> str:
     """Return the note on characters that the fonts do not show, where there are any."""
     if not writer.code_points:
         return ""
-    points = sorted(writer.code_points, key=lambda point: int(re.sub(r"^U\+", "", point), 16))
-    shown = ", ".join(points[:40]) + (f" and {len(points) - 40} more" if len(points) > 40 else "")
+    shown = listed(writer.code_points)
     words = (
         "Characters that the typefaces of this PDF do not hold, and characters that act "
         f"instead of showing, are printed as their Unicode code points in a frame: {shown}. "

@@ -49,7 +49,9 @@ class TypstWriter:
             case nodes.Quote():
                 return f"quote(block: true, {{{self.blocks(block.body)}}})"
             case nodes.CodeBlock():
-                lines = " + linebreak() + ".join(self._text(line) for line in block.text.split("\n"))
+                lines = " + linebreak() + ".join(
+                    self._text(line) for line in block.text.split("\n")
+                )
                 return f"rg.code-listing({lines})"
             case nodes.Rule():
                 return "line(length: 100%, stroke: 0.4pt + rg.rule-line)"
@@ -83,7 +85,7 @@ class TypstWriter:
             rows.extend(cells)
         size = next(s for most, s in _SIZES if len(table.columns) <= most)
         head = ", ".join(
-            f"table.cell(text(weight: \"semibold\", {self.inlines(c.title)}))" for c in table.columns
+            f'table.cell(text(weight: "semibold", {self.inlines(c.title)}))' for c in table.columns
         )
         align = ", ".join(c.align for c in table.columns)
         body = (

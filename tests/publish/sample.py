@@ -15,7 +15,7 @@ RESULTS = "application/vnd.reportgen.results+json"
 
 HOSTILE = [
     "<script>alert('x')</script><img src=x onerror=alert(1)>",
-    "#import \"x\": *; #panic(1) $x$ *bold* _it_ `raw` @ref <label> // comment",
+    '#import "x": *; #panic(1) $x$ *bold* _it_ `raw` @ref <label> // comment',
     r"\input{/etc/passwd} \write18{ls} $\frac{1}{2}$ %",
     "{{ 7*7 }} {% raw %} ${7*7} \"quoted\" 'single' & ampersand &lt;",
     "中文 日本語 한국어",
@@ -80,8 +80,18 @@ def results(**changes: Any) -> dict[str, Any]:
             "project": "Invented Works, line 2",
             "client_reference": "IW-77",
             "history": [
-                {"revision": "A", "date": "2026-01-15", "text": "First issue for comment", "by": "A. Nyman"},
-                {"revision": "B", "date": "2026-03-02", "text": "Shaft mass from weight table", "by": "A. Nyman"},
+                {
+                    "revision": "A",
+                    "date": "2026-01-15",
+                    "text": "First issue for comment",
+                    "by": "A. Nyman",
+                },
+                {
+                    "revision": "B",
+                    "date": "2026-03-02",
+                    "text": "Shaft mass from weight table",
+                    "by": "A. Nyman",
+                },
             ],
             "prepared": {"name": "A. Nyman", "role": "Mechanical engineer"},
             "checked": {"name": "B. Okoro", "role": "Lead engineer"},
@@ -90,12 +100,16 @@ def results(**changes: Any) -> dict[str, Any]:
         "template": {"name": "sample", "digest": "sha512:0123456789abcdef", "origin": "ours"},
         "units": "si",
         "conclusion": [
-            "The rotor does not meet 1 of the 3 stated criteria: whirl at rated speed is 84.1 µm against 60 µm (",
+            "The rotor does not meet 1 of the 3 stated criteria: whirl at rated speed is "
+            "84.1 µm against 60 µm (",
             {"ref": "whirl-table"},
             "); clearance is not assessed.",
         ],
-        "asked": ["How far does rated speed lie from the critical speed ", {"math": r"n_\mathrm{c}"},
-                  ", and does the whirl meet the project's limit?"],
+        "asked": [
+            "How far does rated speed lie from the critical speed ",
+            {"math": r"n_\mathrm{c}"},
+            ", and does the whirl meet the project's limit?",
+        ],
         "machine": "Cooling fan, tag K-12, hot gas recirculation",
         "results": [
             result("n-c", "Critical speed", r"n_\mathrm{c}", "1672 rpm", "critical-speed"),
@@ -103,8 +117,16 @@ def results(**changes: Any) -> dict[str, Any]:
         ],
         "criteria": criteria,
         "holds": [
-            {"id": "H1", "kind": "preliminary", "text": "Stiffness of the support is preliminary (beam calculation, section 4)"},
-            {"id": "H2", "kind": "assumption", "text": "Damping ratio 0.03 is assumed; to be confirmed by test"},
+            {
+                "id": "H1",
+                "kind": "preliminary",
+                "text": "Stiffness of the support is preliminary (beam calculation, section 4)",
+            },
+            {
+                "id": "H2",
+                "kind": "assumption",
+                "text": "Damping ratio 0.03 is assumed; to be confirmed by test",
+            },
         ],
         "cautions": ["A rotor that rubs can burst."],
         "not_assessed": ["Torsional vibration"],
@@ -129,9 +151,12 @@ def criterion(
 def result(name: str, title: str, symbol: str, shown: str, where: str) -> dict[str, Any]:
     """Return a headline result."""
     return {
-        "id": name, "title": title, "symbol": symbol, "value": 1.0, "unit": "m", "quantity": "length",
+        "id": name, "title": title, "symbol": symbol, "value": 1.0, "unit": "m",
+        "quantity": "length",
         "shown": shown, "measure": "none", "method": "closed form", "where": where,
-        "second": {"method": "search", "value": 1.0, "difference": 0.0, "tolerance": 1e-6, "agrees": True},
+        "second": {
+            "method": "search", "value": 1.0, "difference": 0.0, "tolerance": 1e-6, "agrees": True,
+        },
     }  # fmt: skip
 
 
@@ -159,9 +184,7 @@ def curves(kind: int = 0) -> list[dict[str, Any]]:
     found = []
     for name, damping in (("damping 0.03", 0.03), ("damping 0.06, <b>high</b>", 0.06)):
         ratio = [s / (1672 + 40 * kind) for s in speeds]
-        whirl = [
-            5 * r * r / math.hypot(1 - r * r, 2 * damping * r) for r in ratio
-        ]
+        whirl = [5 * r * r / math.hypot(1 - r * r, 2 * damping * r) for r in ratio]
         found.append({"name": name, "x": speeds, "y": [round(w, 4) for w in whirl]})
     return found
 
@@ -202,7 +225,12 @@ def long_table(name: str = "whirl-table", rows: int = 70) -> dict[str, Any]:
             {"title": "Remark"},
         ],
         "rows": [
-            [f"{50 * n} rpm", f"{50 * n / 1672:.3f}", f"{n * 1.2:.1f} µm", "in the running range" if n % 7 == 0 else ""]
+            [
+                f"{50 * n} rpm",
+                f"{50 * n / 1672:.3f}",
+                f"{n * 1.2:.1f} µm",
+                "in the running range" if n % 7 == 0 else "",
+            ]
             for n in range(1, rows + 1)
         ],
         "row_header": True,
@@ -240,13 +268,19 @@ def full() -> dict[str, Any]:
                     "id": "critical-speed",
                     "title": "Critical speed",
                     "formula": r"n_\mathrm{c} = \frac{60}{2\pi}\sqrt{\frac{k}{m}}",
-                    "substituted": r"\frac{60}{2\pi}\sqrt{\frac{1.9\times 10^{6}\,\mathrm{N/m}}{62\,\mathrm{kg}}}",
+                    "substituted": r"\frac{60}{2\pi}\sqrt{\frac{1.9\times 10^{6}\,\mathrm{N/m}}"
+                    r"{62\,\mathrm{kg}}}",
                     "result": r"n_\mathrm{c} = 1672\,\mathrm{rpm}",
                     "alt": "Critical speed: 1672 rpm",
                     "note": ["Undamped; see ", {"ref": "separation"}, " and ", {"ref": "n-c"}, "."],
                 }
             ),
-            block({"kind": "paragraph", "text": ["The ratio is ", {"strong": "0.628"}, ", below one."]}),
+            block(
+                {
+                    "kind": "paragraph",
+                    "text": ["The ratio is ", {"strong": "0.628"}, ", below one."],
+                }
+            ),
         ),
         prose("## Response"),
         code("figure()", block(figure_block("response"))),
@@ -260,7 +294,8 @@ def full() -> dict[str, Any]:
                         "kind": "equation",
                         "id": f"long-{n}",
                         "title": f"A long formula, {n} terms",
-                        "formula": "S = " + " + ".join(rf"\frac{{a_{{{i}}}}}{{b_{{{i}}}^{{2}}}}" for i in range(n)),
+                        "formula": "S = "
+                        + " + ".join(rf"\frac{{a_{{{i}}}}}{{b_{{{i}}}^{{2}}}}" for i in range(n)),
                     }
                 )
                 for n in (3, 30)
@@ -275,7 +310,11 @@ def full() -> dict[str, Any]:
                     "kind": "table",
                     "id": "hostile",
                     "caption": HOSTILE[0],
-                    "columns": [{"title": HOSTILE[1]}, {"title": "Value", "align": "right"}, {"title": "Text"}],
+                    "columns": [
+                        {"title": HOSTILE[1]},
+                        {"title": "Value", "align": "right"},
+                        {"title": "Text"},
+                    ],
                     "rows": [[f"{n}", "1.0", text] for n, text in enumerate(HOSTILE)],
                 }
             ),
@@ -288,13 +327,24 @@ def full() -> dict[str, Any]:
                     "kind": "notice",
                     "level": "caution",
                     "title": "Contact",
-                    "text": ["Beyond the clearance the linear result is void; ", {"ref": "clearance"}, "."],
+                    "text": [
+                        "Beyond the clearance the result is void; ",
+                        {"ref": "clearance"},
+                        ".",
+                    ],
                 }
             ),
-            block({"kind": "notice", "level": "finding", "title": "Finding", "text": "Whirl exceeds the limit."}),
+            block(
+                {
+                    "kind": "notice",
+                    "level": "finding",
+                    "title": "Finding",
+                    "text": "Whirl exceeds the limit.",
+                }
+            ),
         ),
-        code("finish()", {"output_type": "display_data", "metadata": {}, "data": {RESULTS: results(), "text/plain": "x"}}),
-    )  # fmt: skip
+        code("finish()", with_results(results())),
+    )
 
 
 def with_results(made: dict[str, Any]) -> dict[str, Any]:
