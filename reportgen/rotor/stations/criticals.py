@@ -9,7 +9,7 @@ from typing import Literal
 import numpy as np
 import scipy.sparse as sp
 import scipy.sparse.linalg as spl
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import NDArray
 
 from reportgen.errors import ModelError
 from reportgen.rotor.stations.coefficients import Real
@@ -247,10 +247,7 @@ def energy_shares(criticals: Criticals, mode: int) -> EnergyShares:
         per = np.einsum("ei,eij,ej->e", ends, matrices, ends)
         return np.add.reduceat(per, model.node_of[:-1])
 
-    tension = np.zeros(model.elements.length.size)
-    for load in model.rotor.axial_loads:
-        tension[model.node_of[load.station_from] : model.node_of[load.station_to]] += load.force
-    strain = of(model.elements.stiffness + tension[:, None, None] * model.elements.string)
+    strain = of(model.element_stiffness)
     supports, ground, moving = [], np.zeros(p.size), np.zeros(p.size)
     for s, k in zip(model.supports, criticals.stiffness, strict=True):
         with_pedestal = s.bearing.pedestal is not None and p.size > 0
@@ -272,45 +269,3 @@ def energy_shares(criticals: Criticals, mode: int) -> EnergyShares:
         station / kinetic,
         moving / kinetic,
     )
-
-
-@dataclass(frozen=True, eq=False)
-class CriticalSpeedMap:
-    """Undamped criticals against support stiffness.
-
-    ``stiffness`` [N/m], shape (T,); ``speeds`` [rad/s], shape (T, m), zero where ``found``
-    is False (no such critical at that stiffness).
-    """
-
-    stiffness: Real
-    speeds: Real
-    found: NDArray[np.bool_]
-    whirl: Whirl
-
-
-def critical_speed_map(
-    model: Model,
-    stiffness: ArrayLike,
-    count: int = 4,
-    whirl: Whirl = "forward",
-    *,
-    pedestals: bool = False,
-) -> CriticalSpeedMap:
-    """Find the criticals at each of a row of support stiffnesses.
-
-    Parameters
-    ----------
-    stiffness
-        [N/m], shape (T,), the same at every weight-carrying bearing.
-    count, whirl, pedestals
-        See :func:`undamped_criticals`; here ``stiffness`` is by default that of the whole
-        support.
-    """
-    row = np.atleast_1d(np.asarray(stiffness, dtype=np.float64))
-    speeds = np.zeros((row.size, count))
-    found = np.zeros((row.size, count), dtype=bool)
-    for t, k in enumerate(row):
-        got = undamped_criticals(model, float(k), count, whirl, pedestals=pedestals).speeds
-        speeds[t, : got.size] = got
-        found[t, : got.size] = True
-    return CriticalSpeedMap(row, speeds, found, whirl)

@@ -86,7 +86,8 @@ def refine(model: Model, start: Eigenpairs) -> Eigenpairs:
     return Eigenpairs(lam, start.speeds, *normalised(x, p), change)
 
 
-def _motion(x: Complex, p: Complex) -> Motion:
+def motion_of(x: Complex, p: Complex) -> Motion:
+    """Turn vectors (P, n, 4) and (P, p, 2) into one motion at each of P pairs."""
     return Motion(
         np.ascontiguousarray(x.transpose(1, 2, 0))[:, :, None],
         np.ascontiguousarray(p.transpose(1, 2, 0))[:, :, None],
@@ -99,7 +100,7 @@ def _step(
     z = DynamicStiffness(model, lam, speeds)
     x, p = normalised(x, p)
     with np.errstate(all="ignore"):
-        got = z.solve(z.apply(_motion(x, p), rate=True))
+        got = z.solve(z.apply(motion_of(x, p), rate=True))
     new = got.shaft[:, :, 0].transpose(2, 0, 1)
     pedestals = got.pedestals[:, :, 0].transpose(2, 0, 1)
     # Deflections alone weigh in the scale, so that metres and radians do not mix.
@@ -113,23 +114,26 @@ def _step(
     return lam - step, new, pedestals, np.abs(step) / size
 
 
-def left_vectors(model: Model, pairs: Eigenpairs) -> Complex:
-    """Give left vectors of refined pairs on the shaft, (P, n, 4): yᵀ Z(λ, Ω) = 0.
+def left_vectors(model: Model, pairs: Eigenpairs) -> Eigenpairs:
+    """Give the left vectors y of refined pairs, yᵀ Z(λ, Ω) = 0, in place of the right ones.
 
-    One inverse iteration with Zᵀ at the root, where all but the wanted vector vanish. The
-    root is left by 1e-10 of itself so that the solve is regular.
+    Two inverse iterations with Zᵀ at the root, where all but the wanted vector vanish; the
+    root is moved by 1e-10 of itself so that the solve is regular.
     """
-    out = np.empty_like(pairs.shaft)
+    shaft, pedestals = np.empty_like(pairs.shaft), np.empty_like(pairs.pedestals)
     for begin in range(0, pairs.exponents.size, CHUNK):
         at = slice(begin, begin + CHUNK)
         near = pairs.exponents[at] * (1 + 1e-10)
         z = DynamicStiffness(model, near, pairs.speeds[at], transposed=True)
-        # Swapping f and b conjugates the plane motion: the left vector of a symmetric rotor.
-        load = _motion(pairs.shaft[at][:, :, [2, 3, 0, 1]], pairs.pedestals[at][:, :, ::-1])
+        load = motion_of(pairs.shaft[at], pairs.pedestals[at])
         with np.errstate(all="ignore"):
-            y = z.solve(z.solve(load)).shaft[:, :, 0].transpose(2, 0, 1)
-        out[at] = y / np.abs(y).max((1, 2))[:, None, None]
-    return out
+            for _ in range(2):
+                got = z.solve(load)
+                size = np.abs(got.shaft).max(axis=(0, 1, 2))
+                load = Motion(got.shaft / size, got.pedestals / size)
+        shaft[at] = load.shaft[:, :, 0].transpose(2, 0, 1)
+        pedestals[at] = load.pedestals[:, :, 0].transpose(2, 0, 1)
+    return Eigenpairs(pairs.exponents, pairs.speeds, shaft, pedestals, pairs.correction)
 
 
 def lowest_pairs(model: Model, speeds: Real, count: int, *, enrich: int = 8) -> Eigenpairs:

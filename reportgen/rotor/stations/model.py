@@ -78,6 +78,8 @@ class Model:
         Mesh station of each station of the rotor.
     elements
         Element matrices, for recovery of moments.
+    element_stiffness
+        Elastic stiffness of each element with the effect of axial load, (E, 4, 4).
     mass, polar, stiffness, internal
         Chains of shaft, discs and axial load: inertia, gyroscopic, elastic, internal damping.
     station_mass, station_polar, station_diametral
@@ -91,6 +93,7 @@ class Model:
     positions: Real
     node_of: NDArray[np.int64]
     elements: ElementMatrices
+    element_stiffness: Real
     mass: Chain
     polar: Chain
     stiffness: Chain
@@ -124,11 +127,11 @@ class Model:
         return int(self.node_of[station])
 
 
-def _string_chain(rotor: Rotor, node_of: NDArray[np.int64], elements: ElementMatrices) -> Chain:
-    tension = np.zeros(elements.length.size)
+def _tension(rotor: Rotor, node_of: NDArray[np.int64], elements: int) -> Real:
+    tension = np.zeros(elements)
     for load in rotor.axial_loads:
         tension[node_of[load.station_from] : node_of[load.station_to]] += load.force
-    return chain_of_elements(tension[:, None, None] * elements.string)
+    return tension
 
 
 def assemble(rotor: Rotor) -> Model:
@@ -162,6 +165,8 @@ def assemble(rotor: Rotor) -> Model:
         polar[i] += part.polar_inertia
         diametral[i] += part.diametral_inertia
 
+    tension = _tension(rotor, node_of.astype(np.int64), len(sections))
+    loaded = elements.stiffness + tension[:, None, None] * elements.string
     inertia = chain_of_elements(elements.mass)
     inertia.diagonal[:, 0, 0] += mass
     inertia.diagonal[:, 1, 1] += diametral
@@ -184,7 +189,8 @@ def assemble(rotor: Rotor) -> Model:
         elements=elements,
         mass=inertia,
         polar=gyroscopic,
-        stiffness=chain_of_elements(elements.stiffness) + _string_chain(rotor, node_of, elements),
+        stiffness=chain_of_elements(loaded),
+        element_stiffness=loaded,
         internal=chain_of_elements(elements.internal),
         station_mass=mass,
         station_polar=polar,

@@ -141,7 +141,7 @@ def starting_pairs(space: Subspace, speeds: Real) -> tuple[Complex, Complex, Com
     shapes = space.shapes.transpose(2, 0, 1)
     x = np.tensordot(v[..., :m], shapes, 1)
     y = np.tensordot(v[..., m : 2 * m], shapes, 1)
-    shaft = np.concatenate([x + 1j * y, x - 1j * y], axis=-1) / 2
+    shaft = np.asarray(np.concatenate([x + 1j * y, x - 1j * y], axis=-1) / 2, np.complex128)
     p = v[..., 2 * m :].reshape(*v.shape[:2], -1, 2)
     pedestals = np.stack([p[..., 0] + 1j * p[..., 1], p[..., 0] - 1j * p[..., 1]], -1) / 2
     return exponents, shaft, pedestals

@@ -63,7 +63,10 @@ class Response:
     unbalance
         What caused it.
     load
-        Forces on shaft stations, forward part, shape (n, 2, S) [N], [N m].
+        Forces on shaft stations, forward part, shape (n, 2, S) [N], [N m]; a bow enters as
+        the forces that would bend a straight shaft to it.
+    bow
+        Bowed shape at rest, deflection and slope, (n, 2); zero without bow.
     """
 
     model: Model
@@ -75,6 +78,7 @@ class Response:
     residual: Real
     unbalance: tuple[Unbalance, ...]
     load: Complex
+    bow: Complex
 
     @property
     def x(self) -> Complex:
@@ -173,8 +177,10 @@ def unbalance_responses(
     if turning.ndim != 1 or not np.all(np.isfinite(turning)) or np.any(turning < 0):
         raise ModelError("speeds must be one row of finite values, zero or above, in rad/s")
     loads = [_turning_load(model, turning, case) for case in cases]
+    bent = np.zeros((model.stations, 2), dtype=np.complex128)
     if bow is not None:
-        straightening = np.asarray(model.stiffness.times(bow_shape(model, bow)))
+        bent = bow_shape(model, bow)
+        straightening = np.asarray(model.stiffness.times(bent))
         loads = [load + straightening[..., None] for load in loads]
     shape = (model.stations, 4, len(loads), turning.size)
     right = Motion(
@@ -195,6 +201,7 @@ def unbalance_responses(
             residual=residual[r],
             unbalance=tuple(case),
             load=loads[r],
+            bow=bent,
         )
         for r, case in enumerate(cases)
     ]

@@ -146,7 +146,7 @@ def static_deflection(
     weight = gravity * mass_properties(model).mass
     ends = np.concatenate([shape[:-1], shape[1:]], axis=1)
     own = -gravity * np.einsum("eij,j->ei", model.elements.mass, np.array([1.0, 0, 1, 0]))
-    forces = np.einsum("eij,ej->ei", model.elements.stiffness, ends) - own
+    forces = np.einsum("eij,ej->ei", model.element_stiffness, ends) - own
     return StaticState(
         deflection=shape[:, 0],
         slope=shape[:, 1],
