@@ -110,8 +110,8 @@ def ratio_from_amplification(amplification: float) -> float:
     Parameters
     ----------
     amplification
-        Q [-], greater than 1/√2. The form is that of small damping: at Q = 5 the half-power
-        factor of the one-mass rotor differs from 1/(2ζ) by about 2 %.
+        Q [-], greater than 1/√2. The form is that of small damping: the half-power factor
+        of the one-mass rotor is 1 % below 1/(2ζ) at ζ = 0.05 and 4 % below at ζ = 0.1.
 
     Returns
     -------

@@ -191,8 +191,7 @@ def small_damping_amplification(damping_ratio: float) -> float:
     Parameters
     ----------
     damping_ratio
-        ζ [-], greater than 0; above about 0.1 the half-power factor departs from this by more
-        than 1 %, so larger values are refused beyond 1/√2, where there is no peak at all.
+        ζ [-], within (0, 1/√2). The half-power factor is 1 % below at ζ = 0.05, 4 % at ζ = 0.1.
 
     Returns
     -------

@@ -11,7 +11,7 @@ from numpy.typing import ArrayLike, NDArray
 from reportgen.errors import ModelError
 from reportgen.rotor import onemass_checks as check
 from reportgen.rotor.onemass_model import OneMassRotor
-from reportgen.rotor.passage_kernel import Complexes, Floats, dwelt, swept
+from reportgen.rotor.passage_kernel import Complexes, Flags, Floats, dwelt, is_past, swept
 from reportgen.rotor.passage_modes import Modes, modes_of
 from reportgen.rotor.passage_programme import Programme, Segment
 
@@ -160,7 +160,9 @@ class Track:
             _require_range(piece, rotor)
         state = self._first(start)
         self.free: list[Complexes] = []
+        self.late: list[Flags] = []
         for piece in self.pieces:
+            self.late.append(self._late(piece))
             self.free.append(self._free(piece, state))
             end = np.asarray([piece.duration])
             state = self._amplitudes(len(self.free) - 1, end)[:, 0]
@@ -202,10 +204,17 @@ class Track:
         if piece.acceleration == 0.0:
             forced = dwelt(offset, modes.frequency * elapsed)
         else:
-            forced = swept(offset, self.scaled_acceleration(number))
+            forced = swept(offset, self.scaled_acceleration(number), self.late[number][:, None])
         return np.asarray(
             modes.drive[:, None] * forced * turning + self.free[number][:, None] * free
         )
+
+    def _late(self, piece: Segment) -> Flags:
+        """Give which modes have their critical speed behind them at the start of a piece."""
+        if piece.acceleration == 0.0:
+            return np.zeros(self.modes.rate.size, dtype=np.bool_)
+        offset = 1j * piece.start_speed / self.modes.frequency - self.modes.rate
+        return is_past(offset, piece.acceleration / self.modes.frequency**2)
 
     def _free(self, piece: Segment, state: Complexes) -> Complexes:
         """Free motion that joins a piece's forced motion to the state at its start."""
@@ -213,7 +222,7 @@ class Track:
             return state
         modes = self.modes
         offset = 1j * piece.start_speed / modes.frequency - modes.rate
-        forced = swept(offset, piece.acceleration / modes.frequency**2)
+        forced = swept(offset, piece.acceleration / modes.frequency**2, self.late[-1])
         return np.asarray(state - modes.drive * forced * cmath.exp(1j * piece.start_angle))
 
     def _first(self, start: WhirlState | None) -> Complexes:

@@ -25,25 +25,34 @@ from scipy.special import wofz
 
 Complexes = NDArray[np.complex128]
 Floats = NDArray[np.float64]
+Flags = NDArray[np.bool_]
 
 _HALF_ROOT_PI = 0.5 * math.sqrt(math.pi)
 
 
-def swept(p: Complexes, acceleration: Floats | float) -> Complexes:
-    """K(p, a) = ∫₀^∞ exp(−p x + i a x²/2) dx for a ≠ 0 and Re p ≥ 0."""
+def swept(p: Complexes, acceleration: Floats | float, late: Flags | bool = False) -> Complexes:
+    """K(p, a) = ∫₀^∞ exp(−p x + i a x²/2) dx for a ≠ 0 and Re p ≥ 0.
+
+    Where `late` is set the ringing of a critical passed before the start is left out, which is a
+    particular solution as good and has no large terms that the start would have to cancel.
+    """
     kappa = _kappa(acceleration)
+    kappa = np.where(late, -kappa, kappa)
     return np.asarray(_HALF_ROOT_PI * kappa * wofz(0.5j * kappa * p))
 
 
-def swept_parts(p: Complexes, acceleration: float) -> tuple[Complexes, Floats]:
-    """K(p, a) without the ringing of a critical that has been passed, and the ringing's size."""
+def is_past(p: Complexes, acceleration: Floats | float) -> Flags:
+    """Whether the critical speed of a mode has been passed, so that K holds its ringing."""
+    return np.asarray((0.5j * _kappa(acceleration) * p).imag < 0.0)
+
+
+def ringing(p: Complexes, acceleration: float) -> Complexes:
+    """K(p, a) less its late form where the critical has been passed, zero before."""
     kappa = _kappa(acceleration)
-    argument = 0.5j * kappa * p
-    passed = argument.imag < 0.0
-    sign = np.where(passed, -1.0, 1.0)
-    forced = sign * _HALF_ROOT_PI * kappa * wofz(sign * argument)
-    decay = np.exp(np.where(passed, -np.real(argument**2), -np.inf))
-    return np.asarray(forced), np.asarray(2.0 * _HALF_ROOT_PI * np.abs(kappa) * decay)
+    square = (0.5j * kappa * p) ** 2
+    past = is_past(p, acceleration)
+    exponent = np.where(past, -square, 0.0)
+    return np.asarray(np.where(past, 2.0 * _HALF_ROOT_PI * kappa * np.exp(exponent), 0.0))
 
 
 def dwelt(p: Complexes, elapsed: Floats) -> Complexes:

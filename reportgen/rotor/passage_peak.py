@@ -18,7 +18,7 @@ from reportgen.errors import ModelError
 from reportgen.rotor.onemass_model import OneMassRotor
 from reportgen.rotor.onemass_peak import resonance_peak
 from reportgen.rotor.passage_exact import Track, WhirlState
-from reportgen.rotor.passage_kernel import Floats, swept_parts
+from reportgen.rotor.passage_kernel import Floats, is_past, ringing, swept
 from reportgen.rotor.passage_programme import Programme, Segment, speed_range
 
 _PER_PERIOD = 16
@@ -158,9 +158,13 @@ class _Bound:
             left = own - gain / offset * np.exp(1j * self.piece.start_angle)
             steady = np.abs((gain / offset).sum(axis=0) - modes.eccentricity)
             return steady, np.asarray(np.abs(left * free).sum(axis=0))
-        kernel, ringing = swept_parts(offset, self.track.scaled_acceleration(self.number))
-        forced = np.abs((gain * kernel).sum(axis=0) - modes.eccentricity)
-        return forced, np.asarray((np.abs(gain) * ringing + np.abs(own * free)).sum(axis=0))
+        scaled = self.track.scaled_acceleration(self.number)
+        forced = gain * swept(offset, scaled, is_past(offset, scaled))
+        whirl = np.abs(forced.sum(axis=0) - modes.eccentricity)
+        turning = np.exp(1j * (self.piece.start_angle + self.piece.turned(self.grid)))
+        early = ~self.track.late[self.number][:, None]
+        left = own * free + np.where(early, gain * ringing(offset, scaled) * turning, 0.0)
+        return whirl, np.asarray(np.abs(left).sum(axis=0))
 
     def brackets(self, level: float) -> tuple[Floats, Floats]:
         """Intervals, fine enough to hold one maximum each, where |z| may exceed the level."""
