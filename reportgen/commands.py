@@ -120,7 +120,7 @@ def _print_done(one: Any) -> None:
     from rich.table import Table
     from rich.text import Text
 
-    console = Console(highlight=False, soft_wrap=False)
+    console = Console(highlight=False, width=None if sys.stdout.isatty() else 120)
     results = one.results
     table = Table(box=None, pad_edge=False, header_style="bold")
     for title, justify in (

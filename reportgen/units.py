@@ -195,6 +195,13 @@ QUANTITIES: dict[str, Quantity] = {
         ReaderUnit("in⁴", _INCH**4),
         ("mm^4", "cm^4", "in^4"),
     ),
+    "section_modulus": Quantity(
+        "a section modulus",
+        "m³",
+        ReaderUnit("mm³", 1e-9),
+        ReaderUnit("in³", _INCH**3),
+        ("mm^3", "cm^3", "in^3"),
+    ),
     "velocity": Quantity(
         "a velocity", "m/s", ReaderUnit("mm/s", 1e-3), ReaderUnit("in/s", _INCH), ("mm/s", "in/s")
     ),

@@ -6,6 +6,8 @@ import math
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
+from reportgen.assess.cautions import CAUTIONS, Caution
+
 if TYPE_CHECKING:
     from reportgen.criteria import Measure, Outcome
 
@@ -99,7 +101,7 @@ class Assessment:
 
     findings: tuple[Finding, ...] = ()
     judged: tuple[Judged, ...] = ()
-    cautions: tuple[str, ...] = ()
+    cautions: tuple[Caution, ...] = CAUTIONS
     not_assessed: tuple[str, ...] = ()
     _by_id: dict[str, Finding] = field(default_factory=dict, compare=False, repr=False)
 

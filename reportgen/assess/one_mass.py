@@ -8,11 +8,12 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from reportgen.assess import one_mass_second as second
-from reportgen.assess.cautions import CAUTIONS, NOT_ASSESSED
+from reportgen.assess.cautions import NOT_ASSESSED
 from reportgen.assess.model import Assessment, Finding, SecondComputation
 from reportgen.assess.one_mass_judge import Judging, required_range
 from reportgen.assess.one_mass_passage import PassageFindings, find_passage
 from reportgen.assess.one_mass_rotor import reference_speed_of, rotor_of
+from reportgen.assess.one_mass_stress import StressFindings, find_stress
 from reportgen.rotor import onemass
 
 if TYPE_CHECKING:
@@ -52,6 +53,7 @@ class OneMassAssessment(Assessment):
     curve_lag: NDArray[np.float64]
     passages: tuple[PassageFindings, ...]
     grade_speed: float
+    stress: StressFindings | None
     asked: str
     horizontal: bool
 
@@ -87,10 +89,12 @@ def assess(case: OneMassCase) -> OneMassAssessment:
     half_power = onemass.amplification_factor(rotor)
     found = [find_passage(case, rotor, p, i) for i, p in enumerate(case.passages or ())]
     passages = tuple(p for p in found if p is not None)
+    stress = find_stress(case, rotor, speeds["rated"])
     findings = (
         *_critical_findings(rotor, peak, half_power),
         *_amplitude_findings(rotor, speeds),
         *_force_findings(case, rotor, speeds),
+        *_stress_findings(stress),
         *_stability_findings(rotor),
         *(finding for p in passages for finding in p.findings()),
     )
@@ -102,7 +106,6 @@ def assess(case: OneMassCase) -> OneMassAssessment:
     return OneMassAssessment(
         findings=findings,
         judged=judging.all(),
-        cautions=CAUTIONS,
         not_assessed=(
             "second and higher bending modes, gyroscopic effect, speed-dependent supports",
             *NOT_ASSESSED,
@@ -118,6 +121,7 @@ def assess(case: OneMassCase) -> OneMassAssessment:
         curve_lag=onemass.lag_of(curve),
         passages=passages,
         grade_speed=reference_speed_of(case),
+        stress=stress,
         asked=_asked(case),
         horizontal=case.machine.orientation == "horizontal",
     )
@@ -288,6 +292,23 @@ def _force_findings(
             )
         )
     return found
+
+
+def _stress_findings(stress: StressFindings | None) -> list[Finding]:
+    if stress is None:
+        return []
+    return [
+        Finding(
+            id="bending-stress",
+            title="Nominal bending stress of the shaft at rated speed",
+            symbol=r"\sigma",
+            value=stress.stress,
+            quantity="stress",
+            method="largest moment over section modulus, without notch factor",
+            where="bending-stress",
+            headline=False,
+        )
+    ]
 
 
 def _stability_findings(rotor: onemass.OneMassRotor) -> list[Finding]:

@@ -8,8 +8,8 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from reportgen.assess import one_mass_second as second
 from reportgen.assess.model import Finding, SecondComputation
+from reportgen.assess.passage_second import stepped_peak
 from reportgen.rotor import onemass, passage
 
 if TYPE_CHECKING:
@@ -41,7 +41,7 @@ class PassageFindings:
     sag: float
     runout: float
     clearance: float | None
-    integrated_peak: float
+    stepped_peak: float | None
 
     @property
     def closest(self) -> float:
@@ -60,11 +60,13 @@ class PassageFindings:
                 measure="0-peak",
                 method="exact, Faddeeva function",
                 where=f"{self.id}-peak",
-                second=SecondComputation(
-                    "integration of two real planes, DOP853",
-                    self.integrated_peak,
-                    1e-4,
-                    "the integrator's largest step value, interpolated",
+                second=None
+                if self.stepped_peak is None
+                else SecondComputation(
+                    "equation of motion stepped through time",
+                    self.stepped_peak,
+                    1e-5,
+                    "fourth order in a step of 1/64 turn",
                 ),
             ),
             Finding(
@@ -114,5 +116,5 @@ def find_passage(
         sag=float(onemass.static_sag(rotor)) if case.machine.orientation == "horizontal" else 0.0,
         runout=float(given.runout or 0.0),
         clearance=None if given.clearance is None else float(given.clearance),
-        integrated_peak=second.integrated_peak(rotor, programme),
+        stepped_peak=stepped_peak(rotor, programme, peak.time),
     )

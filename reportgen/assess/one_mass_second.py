@@ -1,8 +1,7 @@
 """Second computations of the one-mass rotor, by methods that share no formula with the first.
 
 The first computation uses closed forms in the complex plane. Here the same rotor is
-written in two real planes as matrices (steady state, eigenvalues) and integrated in time
-(passage), with general-purpose linear algebra and integration only.
+written in two real planes as matrices, with general-purpose linear algebra and root finding only.
 """
 
 from __future__ import annotations
@@ -11,7 +10,6 @@ import math
 from typing import TYPE_CHECKING
 
 import numpy as np
-from scipy.integrate import solve_ivp
 from scipy.linalg import eigh, eigvals
 from scipy.optimize import brentq, minimize_scalar
 
@@ -19,7 +17,6 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from reportgen.rotor.onemass import OneMassRotor
-    from reportgen.rotor.passage import ConstantAcceleration
 
     Matrix = NDArray[np.float64]
 
@@ -132,43 +129,3 @@ def instability_onset(rotor: OneMassRotor) -> float:
     while growth(high) < 0:
         low, high = high, 2 * high
     return float(brentq(growth, low, high, xtol=1e-10 * high))
-
-
-def integrated_peak(rotor: OneMassRotor, programme: ConstantAcceleration) -> float:
-    """Return the largest |z| in m of a passage, by DOP853 in two real planes.
-
-    The start is the steady whirl at the starting speed, as in the first computation.
-    """
-    m, c, k, e = rotor.mass, rotor.damping, rotor.stiffness, rotor.eccentricity
-    w0, a = programme.start_speed, programme.acceleration
-    end = (programme.end_speed - w0) / a
-    bow = rotor.bow * np.exp(1j * rotor.bow_angle)
-    z0 = (m * e * w0**2 + k * bow) / (k - m * w0**2 + 1j * c * w0)
-
-    def rate(t: float, y: NDArray[np.float64]) -> list[float]:
-        speed, angle = w0 + a * t, w0 * t + 0.5 * a * t * t
-        f = (m * e * (speed**2 - 1j * a) + k * bow) * np.exp(1j * angle)
-        return [
-            y[2],
-            y[3],
-            (f.real - c * y[2] - k * y[0]) / m,
-            (f.imag - c * y[3] - k * y[1]) / m,
-        ]
-
-    v0 = 1j * w0 * z0
-    out = solve_ivp(
-        rate,
-        (0.0, end),
-        [z0.real, z0.imag, v0.real, v0.imag],
-        method="DOP853",
-        rtol=1e-9,
-        atol=1e-12 * max(e, rotor.bow, 1e-9),
-        dense_output=False,
-        max_step=2 * np.pi / rotor.natural_frequency / 20,
-    )
-    size = np.hypot(out.y[0], out.y[1])
-    i = int(np.argmax(size))
-    if 0 < i < size.size - 1:  # parabola through the three steps around the largest
-        p = np.polyfit(out.t[i - 1 : i + 2] - out.t[i], size[i - 1 : i + 2], 2)
-        return float(p[2] - p[1] ** 2 / (4 * p[0]))
-    return float(size[i])

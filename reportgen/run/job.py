@@ -185,6 +185,10 @@ def payload_of(
     try:
         executed = execute(template, resolved, kernel=options.kernel, timeout=options.timeout)
     except CellError as error:
+        if error.name == "ModelError":  # the case's values, not the tool, are at fault
+            raise InputError(
+                Problem(error.message, f"found while running {error.template}", str(case_path))
+            ) from error
         raise _with_partial(error, resolved["document"], options.output) from error
     results = executed.results
     document = resolved["document"]

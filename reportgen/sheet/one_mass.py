@@ -339,6 +339,7 @@ def forces(sheet: Sheet, calc: OneMassAssessment) -> None:
         )
     if not calc.horizontal:
         sheet.paragraph("The rotor is vertical: there is no sag under its weight.")
+        _stress(sheet, calc)
         return
     sheet.equation(
         "sag",
@@ -354,6 +355,44 @@ def forces(sheet: Sheet, calc: OneMassAssessment) -> None:
             if rotor.support is None
             else "; the stiffness is that of shaft and supports in series"
         ),
+    )
+    _stress(sheet, calc)
+
+
+def _stress(sheet: Sheet, calc: OneMassAssessment) -> None:
+    found = calc.stress
+    if found is None:
+        sheet.paragraph("The case gives no shaft dimensions: bending stress is not assessed.")
+        return
+    sheet.equation(
+        "section-modulus",
+        "Section modulus of the shaft",
+        r"W = \frac{\pi\left(<d>^{4} - <d_i>^{4}\right)}{32 \cdot <d>}",
+        {"d": (found.outer, "diameter"), "d_i": (found.inner, "diameter")},
+        (found.moment / found.stress, "section_modulus"),
+    )
+    sheet.equation(
+        "bending-moment",
+        "Largest bending moment at rated speed, weight and whirl added",
+        r"M = <l_M>\left(<W_g> + <F_s>\right)",
+        {
+            "l_M": (found.arm, "length"),
+            "W_g": (found.weight, "force"),
+            "F_s": (found.whirl, "force"),
+        },
+        (found.moment, "torque"),
+        note="l_M is the largest moment for a force of one at the mass, by the beam of the case; "
+        "W_g the weight, none for a vertical rotor; F_s the elastic force of the whirl",
+    )
+    sheet.equation(
+        "bending-stress",
+        "Nominal bending stress of the shaft at rated speed, without notch factor",
+        r"\sigma = \frac{<M>}{<W>}",
+        {
+            "M": (found.moment, "torque"),
+            "W": (found.moment / found.stress, "section_modulus"),
+        },
+        calc["bending-stress"],
     )
 
 

@@ -134,7 +134,7 @@ def passage_figure(sheet: Sheet, calc: OneMassAssessment, one: PassageFindings) 
 
 def orbit_figure(sheet: Sheet, one: PassageFindings) -> tuple[Any, str]:
     """Return the figure of the shaft centre's path around the largest amplitude."""
-    figure, ax = new(1, 1, height=3.3)
+    figure, ax = new(1, 1, height=2.7)
     z = one.orbit
     x, y = sheet.to_reader(z.real, "displacement"), sheet.to_reader(z.imag, "displacement")
     ax.plot(x, y, label="Shaft centre", color=BLUE, linewidth=1.1)

@@ -176,7 +176,7 @@ class Sheet:
             "results": [self._result(f) for f in assessment.findings if f.headline],
             "criteria": [self._criterion(j) for j in assessment.judged],
             "holds": holds,
-            "cautions": list(assessment.cautions),
+            "cautions": [f"{c.title}. {c.text}" for c in assessment.cautions],
             "not_assessed": list(assessment.not_assessed),
             "series": dict(series or {}),
         }

@@ -163,8 +163,8 @@ def _power(value: float) -> str:
 
 def cautions(sheet: Sheet, calc: Assessment) -> None:
     """Show the cautions, and what the calculation does not assess."""
-    for number, text in enumerate(calc.cautions, 1):
-        sheet.caution(f"Caution {number}", text)
+    for caution in calc.cautions:
+        sheet.caution(caution.title, caution.text)
     sheet.paragraph("This calculation does not assess:")
     sheet.listing(calc.not_assessed)
 

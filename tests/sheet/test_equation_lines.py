@@ -21,14 +21,14 @@ def test_marks_print_as_symbols_and_as_values() -> None:
     assert block["formula"] == r"\omega_n = \sqrt{\frac{k}{m}}"
     substituted = str(block["substituted"])
     assert substituted.startswith(r"\sqrt{\frac{\left(")
-    assert r"50\ \mathrm{kg}" in substituted
+    assert r"50\ \text{kg}" in substituted
     assert "<" not in substituted
     assert str(block["result"]).startswith(r"\omega_n = 954.9")
 
 
 def test_units_follow_the_reader() -> None:
     block = line("W = <m>", {"m": (0.45359237, "mass")}, system="us", result=None)
-    assert r"1\ \mathrm{lb}" in str(block["substituted"])
+    assert r"1\ \text{lb}" in str(block["substituted"])
     assert "result" not in block
 
 

@@ -1,0 +1,212 @@
+"""What tests of more than one floor stand on."""
+
+from __future__ import annotations
+
+import fcntl
+import json
+import os
+import shutil
+import subprocess
+import sys
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from dataclasses import dataclass, field
+from datetime import UTC, datetime, timedelta
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+SIGNED = datetime(2026, 3, 2, 10, 0, tzinfo=UTC)
+"""When the packages of these tests are signed."""
+
+TYPST_SOURCE = """\
+#set document(title: "Test report", author: "Nobody", date: datetime(
+  year: 2026, month: 3, day: 2))
+#set text(lang: "en")
+= Test report
+Rotor of an invented pump. A page that holds what PDF/A-3a and PDF/UA-1 ask for.
+"""
+
+
+@dataclass
+class Workshop:
+    """Makes throw-away identities and small packages, signed as far as asked."""
+
+    folder: Path
+    pdf: bytes
+    identities: dict[str, Any] = field(default_factory=dict)
+    signed_time: datetime = SIGNED
+
+    def identity(self, name: str) -> Any:
+        """Give the self-issued identity of a person, made once a session."""
+        from reportgen.package.identity import self_issued_identity
+
+        if name not in self.identities:
+            self.identities[name] = self_issued_identity(
+                name, folder=self.folder / "identities", now=SIGNED - timedelta(days=30)
+            )
+        return self.identities[name]
+
+    def payload(self, **changes: Any) -> dict[str, bytes]:
+        """Give a small payload; ``changes`` go into the document, ``results`` around it."""
+        from reportgen.package.howto import how_to_check
+
+        around = changes.pop("results", {})
+        document = {
+            "number": "CAL-0417",
+            "title": "Lateral vibration of an invented pump rotor",
+            "revision": "B",
+            "status": "for review",
+            "date": "2026-03-02",
+            "prepared": {"name": "Ann Ash", "role": "engineer"},
+            "checked": {"name": "Bo Birch", "role": "checker"},
+            "approved": {"name": "Cy Cedar", "role": "lead"},
+            **changes,
+        }
+        results = {
+            "format": 1,
+            "document": document,
+            "results": [
+                {"id": "critical", "value": 175.0, "second": {"agrees": True}},
+                {"id": "sag", "value": 3.2e-4},
+            ],
+            "holds": [],
+            **around,
+        }
+        number, revision = document["number"], document["revision"]
+        return {
+            "results.json": json.dumps(results, sort_keys=True).encode(),
+            "inputs.json": json.dumps({"rotor": {"mass": {"si": 62.0, "unit": "kg"}}}).encode(),
+            "report.pdf": self.pdf,
+            "report.html": b"<!DOCTYPE html><title>Test report</title><p>Test</p>",
+            "case.yaml": "number: CAL-0417 # mass 62 kg, ζ 0.02\n".encode(),
+            "tables/stations.csv": b"station,diameter\n1,0.05\n",
+            "HOW-TO-CHECK.txt": how_to_check(number, revision).encode(),
+        }
+
+    def package(self, out: Path, upto: str = "", **changes: Any) -> Path:
+        """Write a package and sign it up to a role; every hold is accepted on the way."""
+        from reportgen.package.names import package_name
+        from reportgen.package.write import write_package
+
+        payload = self.payload(**changes)
+        document = json.loads(payload["results.json"])["document"]
+        name = package_name(document["number"], document["revision"])
+        info = {"External-Identifier": document["number"], "Bagging-Date": "2026-03-02"}
+        path = write_package(out, name, payload, info)
+        people = (("prepared", "Ann Ash"), ("checked", "Bo Birch"), ("approved", "Cy Cedar"))
+        for hours, (role, person) in enumerate(people):
+            if upto:
+                self.sign(path, role, person, hours)
+            if role == upto:
+                break
+        return path
+
+    def sign(
+        self, path: Path, role: str, person: str, hours: int = 0, identity: Any = None, **how: Any
+    ) -> Path:
+        """Sign a package as a person, hours after the usual time."""
+        from reportgen.package.sign import sign_package
+
+        results = json.loads((path / "data" / "results.json").read_bytes())
+        how.setdefault("accepted_holds", [hold["id"] for hold in results["holds"]])
+        how.setdefault("time", SIGNED + timedelta(hours=hours))
+        identity = identity or self.identity(person)
+        return sign_package(path, role, identity, f"{role} with care", person, **how)  # type: ignore[arg-type]
+
+
+@pytest.fixture(scope="session")
+def tiny_pdf() -> bytes:
+    """Give a PDF of one page, PDF/A-3a and PDF/UA-1, as publishing makes them."""
+    import typst
+
+    pdf = typst.compile(TYPST_SOURCE.encode(), format="pdf", pdf_standards=["a-3a", "ua-1"])
+    assert isinstance(pdf, bytes)
+    return pdf
+
+
+@pytest.fixture(scope="session")
+def workshop(tmp_path_factory: pytest.TempPathFactory, tiny_pdf: bytes) -> Workshop:
+    """Give the maker of throw-away identities and packages."""
+    return Workshop(tmp_path_factory.mktemp("workshop"), tiny_pdf)
+
+
+@pytest.fixture(scope="session")
+def approved_once(workshop: Workshop, tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """Give a package with all three sign-offs; not to be changed, see ``approved``."""
+    return workshop.package(tmp_path_factory.mktemp("approved"), "approved")
+
+
+@pytest.fixture
+def approved(approved_once: Path, tmp_path: Path) -> Path:
+    """Give a copy, to do anything to, of a package with all three sign-offs."""
+    return Path(shutil.copytree(approved_once, tmp_path / "copy" / approved_once.name))
+
+
+@pytest.fixture
+def judge() -> Callable[..., Any]:
+    """Verify a package as a reader three days after signing would."""
+    from reportgen.archive.verify import verify_package
+
+    def verify(path: Path, trust: Any = None) -> Any:
+        return verify_package(path, trust, now=SIGNED + timedelta(days=3))
+
+    return verify
+
+
+@dataclass(frozen=True)
+class Demo:
+    """A demo case as a user ran it: exit status, what was printed, the package left."""
+
+    case: Path
+    status: int
+    out: str
+    err: str
+    package: Path
+
+    def results(self) -> dict[str, Any]:
+        """Give the package's ``results.json``."""
+        found: dict[str, Any] = json.loads((self.package / "data" / "results.json").read_bytes())
+        return found
+
+
+DEMOS = tuple(sorted(path.stem for path in (Path(__file__).parents[1] / "cases").glob("*.yaml")))
+
+
+@pytest.fixture(scope="session")
+def run_demo(tmp_path_factory: pytest.TempPathFactory) -> Callable[[str], Demo]:
+    """Run a demo case by name as a user would; once for all processes of a test run."""
+    base = tmp_path_factory.getbasetemp()
+    if os.environ.get("PYTEST_XDIST_WORKER"):
+        base = base.parent
+    shared = base / "demos"
+    shared.mkdir(exist_ok=True)
+
+    def run(name: str) -> Demo:
+        place, record = shared / name, shared / f"{name}.json"
+        with one_at_a_time(shared / f"{name}.lock"):
+            if not record.exists():
+                case = Path(__file__).parents[1] / "cases" / f"{name}.yaml"
+                done = subprocess.run(
+                    [sys.executable, "-m", "reportgen.cli", "run", str(case), "-o", str(place)],
+                    env={**os.environ, "REPORTGEN_HOME": str(shared / "identity")},
+                    capture_output=True,
+                    text=True,
+                    check=False,
+                )
+                record.write_text(json.dumps([str(case), done.returncode, done.stdout, done.stderr]))
+        case_path, status, out, err = json.loads(record.read_text())
+        packages = sorted(path for path in place.iterdir() if path.is_dir()) if place.is_dir() else []
+        assert len(packages) == 1, f"{name}: status {status}, {err}"
+        return Demo(Path(case_path), status, out, err, packages[0])
+
+    return run
+
+
+@contextmanager
+def one_at_a_time(lock: Path) -> Iterator[None]:
+    """Hold a lock file that other processes wait for."""
+    with lock.open("w") as file:
+        fcntl.flock(file, fcntl.LOCK_EX)
+        yield
