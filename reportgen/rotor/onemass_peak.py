@@ -131,12 +131,12 @@ def resonance_peaks(rotor: OneMassRotor) -> tuple[Peak, ...]:
         peak = _closed_form(rotor)
         return (peak,) if peak.exists else ()
     numerator, denominator = _square_of_response(rotor)
-    unbounded = _undamped_criticals(rotor)
+    unbounded = undamped_criticals(rotor)
     found = [
         Peak(speed, math.inf, math.pi / 2.0, exists=True, reason=_UNDAMPED) for speed in unbounded
     ]
     slope = numerator.deriv() * denominator - numerator * denominator.deriv()
-    for ratio in _positive_roots(slope):
+    for ratio in positive_roots(slope):
         if any(abs(ratio * rotor.natural_frequency - s) < 1e-6 * s for s in unbounded):
             continue
         stationary = _polished(rotor, ratio, slope)
@@ -172,7 +172,7 @@ def amplification_factor(rotor: OneMassRotor) -> AmplificationFactor:
             peak.speed, None, None, None, exists=False, reason=f"{_UNDAMPED}: no half-power points"
         )
     numerator, denominator = _square_of_response(rotor)
-    crossings = _positive_roots(2.0 * numerator - peak.amplitude**2 * denominator)
+    crossings = positive_roots(2.0 * numerator - peak.amplitude**2 * denominator)
     speeds = [r * rotor.natural_frequency for r in crossings]
     lower = max((s for s in speeds if s < peak.speed), default=None)
     upper = min((s for s in speeds if s > peak.speed), default=None)
@@ -239,17 +239,22 @@ def _require_excitation(rotor: OneMassRotor) -> None:
         raise ModelError("the rotor has neither unbalance nor bow; there is no response to search")
 
 
-def _square_of_response(rotor: OneMassRotor) -> tuple[Polynomial, Polynomial]:
-    """|Z|² as numerator [m²] and denominator [-], both polynomials in r = Ω/ωₙ."""
+def quotient(rotor: OneMassRotor) -> tuple[Polynomial, Polynomial]:
+    """Response Z as numerator [m] and denominator [-], complex polynomials in r = Ω/ωₙ."""
     bow, e = rotor.bow_vector, rotor.eccentricity
     disc = Polynomial([0.0, 2j * rotor.damping_ratio, -1.0])
     unbalance = Polynomial([0.0, 0.0, e])
     if rotor.support is None:
-        return _square(unbalance + bow), _square(disc + 1.0)
+        return unbalance + bow, disc + 1.0
     own, k, w = rotor.support, rotor.stiffness, rotor.natural_frequency
     ends = Polynomial([own.stiffness / k, 1j * own.damping * w / k, -own.mass / rotor.mass])
-    numerator = (ends + 1.0) * unbalance + ends * bow
-    return _square(numerator), _square(disc + ends + disc * ends)
+    return (ends + 1.0) * unbalance + ends * bow, disc + ends + disc * ends
+
+
+def _square_of_response(rotor: OneMassRotor) -> tuple[Polynomial, Polynomial]:
+    """|Z|² as numerator [m²] and denominator [-], real polynomials in r."""
+    numerator, denominator = quotient(rotor)
+    return _square(numerator), _square(denominator)
 
 
 def _square(polynomial: Polynomial) -> Polynomial:
@@ -257,7 +262,7 @@ def _square(polynomial: Polynomial) -> Polynomial:
     return Polynomial(np.real((polynomial * conjugate).coef))
 
 
-def _positive_roots(polynomial: Polynomial) -> list[float]:
+def positive_roots(polynomial: Polynomial) -> list[float]:
     """Real positive roots; near-double ones may show as a pair off the axis, so allow for that."""
     trimmed = polynomial.trim(0.0)
     roots: NDArray[np.complex128] = np.asarray(trimmed.roots(), dtype=np.complex128)
@@ -295,7 +300,7 @@ def _half_power(rotor: OneMassRotor, guess: float, peak: Peak) -> float:
     return _root(excess, *ends)
 
 
-def _undamped_criticals(rotor: OneMassRotor) -> list[float]:
+def undamped_criticals(rotor: OneMassRotor) -> list[float]:
     """Speeds where the response has no bound [rad/s]; empty as soon as anything damps."""
     if rotor.damping_ratio > 0.0:
         return []

@@ -120,7 +120,7 @@ def passage(
     Poppe, G. P. M. & Wijers, C. M. J. (1990), ACM TOMS 16, 38-46 (the Faddeeva function).
     """
     track = Track(rotor, programme, start)
-    instants = _instants(times, programme)
+    instants = instants_within(times, programme)
     speed, angle = np.empty(instants.size), np.empty(instants.size)
     displacement = np.empty(instants.size, dtype=np.complex128)
     velocity = np.empty(instants.size, dtype=np.complex128)
@@ -251,7 +251,8 @@ class Track:
         return np.asarray(modes.inverse @ (state + modes.shift * turning))
 
 
-def _instants(times: ArrayLike, programme: Programme) -> Floats:
+def instants_within(times: ArrayLike, programme: Programme) -> Floats:
+    """Give instants as an array, or refuse those outside a programme."""
     instants = np.atleast_1d(np.asarray(times, dtype=np.float64))
     if instants.ndim != 1:
         raise ModelError("times must be a one-dimensional array of instants in s")

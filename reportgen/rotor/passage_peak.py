@@ -9,6 +9,7 @@ best amplitude seen is the motion sampled finely, and the best local maxima are 
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -16,7 +17,7 @@ from numpy.typing import NDArray
 
 from reportgen.errors import ModelError
 from reportgen.rotor.onemass_model import OneMassRotor
-from reportgen.rotor.onemass_peak import resonance_peak
+from reportgen.rotor.onemass_peak import Peak, resonance_peak, resonance_peaks
 from reportgen.rotor.passage_exact import Track, WhirlState
 from reportgen.rotor.passage_kernel import Floats, is_past, ringing, swept
 from reportgen.rotor.passage_programme import Programme, Segment, speed_range
@@ -42,13 +43,13 @@ class PassagePeak:
     time
         That instant [s].
     steady_peak
-        Highest peak of the steady response [m] (0-peak); infinite without damping, None if there
-        is none.
+        Highest peak of the steady response within the programme's speeds [m] (0-peak), or at any
+        speed if none is within; infinite without damping, None if there is none.
     ratio
         amplitude / steady_peak [-]; None if there is no steady peak.
     crossed
-        Whether the programme takes the rotor through its critical speed (that of the steady peak)
-        and past the highest amplitude. If not, `amplitude` is no passage.
+        Whether the programme takes the rotor through a critical speed (that of a steady peak) and
+        past the highest amplitude. If not, `amplitude` is no passage.
     reason
         Why not, or what else is to be said; otherwise empty.
     """
@@ -88,25 +89,38 @@ def passage_peak(
         As in `passage`, if the rotor has neither unbalance nor bow, or if the search would need
         more than 20 million instants (a very long dwell without damping).
     """
-    steady = resonance_peak(rotor)
-    track = Track(rotor, programme, start)
-    amplitude, time, speed = _highest(track)
-    ratio = None if steady.amplitude is None else amplitude / steady.amplitude
-    crossed, reason = True, ""
-    if steady.speed is None:
-        crossed, reason = False, f"there is no critical speed to pass: {steady.reason}"
-    else:
-        crossed, reason = _verdict(programme, steady.speed, time)
-    return PassagePeak(amplitude, speed, time, steady.amplitude, ratio, crossed, reason)
-
-
-def _verdict(programme: Programme, critical: float, time: float) -> tuple[bool, str]:
+    criticals = resonance_peaks(rotor)
     low, high = speed_range(programme)
-    if not low < critical < high:
-        return False, (
-            f"the critical speed {critical:.6g} rad/s is not within the programme's "
-            f"{low:.6g} to {high:.6g} rad/s: this is no passage"
+    passed = [peak for peak in criticals if low < (peak.speed or 0.0) < high]
+    amplitude, time, speed = _highest(Track(rotor, programme, start))
+    steady = max((peak.amplitude or 0.0 for peak in passed or criticals), default=None)
+    ratio = None if steady is None else amplitude / steady
+    if not criticals:
+        crossed, reason = (
+            False,
+            f"there is no critical speed to pass: {resonance_peak(rotor).reason}",
         )
+    elif not passed:
+        crossed, reason = (
+            False,
+            (
+                f"the critical speed {_listed(criticals)} rad/s is not within the programme's "
+                f"{low:.6g} to {high:.6g} rad/s: this is no passage"
+            ),
+        )
+    else:
+        crossed, reason = _verdict(programme, time)
+        missed = [peak for peak in criticals if peak not in passed]
+        if missed and not reason:
+            reason = f"the critical speed {_listed(missed)} rad/s lies outside the programme"
+    return PassagePeak(amplitude, speed, time, steady, ratio, crossed, reason)
+
+
+def _listed(peaks: Sequence[Peak]) -> str:
+    return " and ".join(f"{peak.speed:.6g}" for peak in peaks)
+
+
+def _verdict(programme: Programme, time: float) -> tuple[bool, str]:
     first, last = programme.start_time, programme.end_time
     if time >= last - 1e-9 * (last - first):
         return False, (
