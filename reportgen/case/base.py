@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import types
 import typing
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from functools import cache
 from typing import Annotated, Any, ClassVar
 
@@ -21,6 +21,7 @@ from pydantic_core.core_schema import ValidationInfo
 from reportgen.case.given import Given, Status
 from reportgen.case.nodes import ListNode, MapNode, ShortNode, TextNode
 from reportgen.case.reading import Reading, described, fault, nearest
+from reportgen.case.tables import Table
 
 
 def words_of(name: str) -> str:
@@ -103,12 +104,17 @@ class GivenSection(Section):
         if stated:
             for key, value in kept.items():
                 if value is not None and key not in stated and _takes_givens(cls, key):
-                    kept[key] = _handed_down(value, stated)
+                    kept[key] = _handed_down(value, stated, _is_by_name(cls, key))
         return kept
 
 
-def _handed_down(node: Any, stated: dict[str, Any]) -> Any:
+def _handed_down(node: Any, stated: dict[str, Any], by_name: bool = False) -> Any:
     """Return a node with a section's source and status where it states none of its own."""
+    if isinstance(node, MapNode) and by_name:
+        named = type(node)(node.path, node.mark)
+        named.key_marks = node.key_marks
+        named.update({key: _handed_down(value, stated) for key, value in node.items()})
+        return named
     if isinstance(node, ListNode):
         copy = ListNode(node.path, node.mark)
         copy.marks = node.marks
@@ -127,36 +133,49 @@ def _handed_down(node: Any, stated: dict[str, Any]) -> Any:
     return copy_map
 
 
-def walk(section: BaseModel, path: str = "") -> Iterator[tuple[str, str, Given]]:
-    """Yield path, title and given of every field of a section, depth first, in order."""
+def walk(
+    section: BaseModel, path: str = "", owner: str = ""
+) -> Iterator[tuple[str, str, Given | Table]]:
+    """Yield path, title and value of every given and side table, depth first, in order.
+
+    ``owner`` names what the section belongs to, where it has no name of its own.
+    """
+    owner = getattr(section, "name", None) or owner
     for name in type(section).model_fields:
         value = getattr(section, name)
         at = f"{path}.{words_of(name)}" if path else words_of(name)
-        if isinstance(value, Given):
-            yield at, title_of(section, name), value
+        if isinstance(value, (Given, Table)):
+            yield at, title_of(section, name, owner), value
         elif isinstance(value, Section):
-            yield from walk(value, at)
-        elif isinstance(value, (list, tuple)):
+            yield from walk(value, at, owner)
+        elif isinstance(value, tuple):
             for number, item in enumerate(value, 1):
                 if isinstance(item, Section):
-                    yield from walk(item, f"{at}[{number}]")
+                    numbered = f"{type(item).prefix} {number}" if type(item).prefix else ""
+                    yield from walk(item, f"{at}[{number}]", _joined(owner, numbered))
         elif isinstance(value, dict):
             for key, item in value.items():
-                if isinstance(item, Given):
+                if isinstance(item, (Given, Table)):
                     yield f"{at}.{key}", key[:1].upper() + key[1:], item
                 elif isinstance(item, Section):
-                    yield from walk(item, f"{at}.{key}")
+                    yield from walk(item, f"{at}.{key}", f"{type(item).prefix} {key}".strip())
 
 
-def title_of(section: BaseModel, name: str) -> str:
+def _joined(owner: str, inner: str) -> str:
+    return f"{owner}, {inner[:1].lower()}{inner[1:]}" if owner and inner else owner or inner
+
+
+def title_of(section: BaseModel, name: str, owner: str = "") -> str:
     """Return a given's title in print, such as ``Shaft outer diameter``."""
     kind = type(section)
-    own = getattr(section, "name", None)
     prefix, words = getattr(kind, "prefix", ""), words_of(name)
     if stated := kind.model_fields[name].title:
         prefix, words = "", stated
-    if isinstance(own, str) and own:
-        return f"{own}, {words}"
+    elif words == "both":
+        words = ""
+    if owner:
+        said = prefix.lower() in owner.lower() or getattr(section, "name", None) == owner
+        return _joined(owner, words if said else f"{prefix} {words}".strip())
     title = f"{prefix} {words} {kind.suffix if issubclass(kind, Section) else ''}".strip()
     return title[:1].upper() + title[1:]
 
@@ -171,12 +190,27 @@ def _takes_givens(cls: type[BaseModel], key: str) -> bool:
     """Tell whether the field under a key is a given, a section of givens, or a list of them."""
     for name, field in cls.model_fields.items():
         if words_of(name) == key:
-            return any(t is Given or _is_section(t) for t in _parts(field.annotation))
+            return any(_has_source(t) for t in _parts(field.annotation))
     return False
 
 
-def _is_section(kind: Any) -> bool:
-    return isinstance(kind, type) and issubclass(kind, GivenSection)
+@cache
+def _is_by_name(cls: type[BaseModel], key: str) -> bool:
+    """Tell whether the field under a key holds sections by their names."""
+    return any(
+        words_of(name) == key and typing.get_origin(field.annotation) is dict
+        for name, field in cls.model_fields.items()
+    )
+
+
+def _has_source(kind: Any) -> bool:
+    return isinstance(kind, type) and (
+        issubclass(kind, GivenSection) or {"source", "status"} <= set(_fields(kind))
+    )
+
+
+def _fields(kind: type) -> Iterable[str]:
+    return kind.model_fields if issubclass(kind, BaseModel) else ()
 
 
 def _parts(annotation: Any) -> Iterator[Any]:
@@ -184,7 +218,7 @@ def _parts(annotation: Any) -> Iterator[Any]:
     origin = typing.get_origin(annotation)
     if origin is Annotated:
         yield from _parts(typing.get_args(annotation)[0])
-    elif origin in (typing.Union, types.UnionType, list, tuple):
+    elif origin in (typing.Union, types.UnionType, list, tuple, dict):
         for part in typing.get_args(annotation):
             yield from _parts(part)
     else:

@@ -48,7 +48,7 @@ class Case(Section):
         return [
             (path, title, given, given.quantity)
             for path, title, given in walk(self)
-            if not _CRITERION.match(path)
+            if isinstance(given, Given) and not _CRITERION.match(path)
         ]
 
     def holds(self) -> list[dict[str, str]]:
@@ -60,7 +60,8 @@ class Case(Section):
         found: list[tuple[str, str]] = []
         for path, title, given in walk(self):
             number = _CRITERION.match(path)
-            what = f"{title}{f' of criterion {number[1]}' if number else ''}, {given.as_given}"
+            stated = given.as_given if isinstance(given, Given) else given.file
+            what = f"{title}{f' of criterion {number[1]}' if number else ''}, {stated}"
             source = given.source or "no source stated"
             if given.status == "preliminary":
                 found.append(("preliminary", f"{what}: preliminary; {source}"))

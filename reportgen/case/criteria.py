@@ -6,8 +6,8 @@ from typing import Annotated, ClassVar, Literal, Self
 
 from pydantic import Field, model_validator
 
-from reportgen.case.base import GivenSection, Line, Section
-from reportgen.case.common import problem
+from reportgen.case.base import GivenSection, Line
+from reportgen.case.common import exactly_one, problem
 from reportgen.case.given import Given, Of
 from reportgen.errors import ModelError
 from reportgen.units import QUANTITIES, UnitError, parse_quantity
@@ -16,6 +16,10 @@ Measure = Literal["0-peak", "peak-to-peak", "r.m.s."]
 Margin = Annotated[
     Given,
     Of("percent", above=0.0, below=1.0, because="a margin lies between 0 and 100 %"),
+]
+Share = Annotated[
+    Given,
+    Of("percent", above=0.0, at_most=1.0, because="a share is above 0 and at most 100 %"),
 ]
 
 
@@ -58,10 +62,7 @@ class PassageClearance(Limit):
     """Share of the smallest clearance that a passage may use."""
 
     kind: Literal["passage clearance"]
-    share: Annotated[
-        Given,
-        Of("percent", above=0.0, at_most=1.0, because="a share is above 0 and at most 100 %"),
-    ] = Field(examples=["75 %"])
+    share: Share = Field(examples=["75 %"])
 
 
 class BalanceGrade(Limit):
@@ -114,6 +115,65 @@ class ProjectLimit(Limit):
         raise problem(found, remedy, "limit")
 
 
+class Clearance(Limit):
+    """Share of the local clearance that whirl, sag and runout may use together."""
+
+    kind: Literal["clearance"]
+    share: Share = Field(examples=["75 %"])
+    over: Literal["rated", "operating range", "up to trip"] = Field(examples=["operating range"])
+
+
+class LogarithmicDecrement(Limit):
+    """Least logarithmic decrement of any forward mode, with added cross-coupling where stated."""
+
+    kind: Literal["logarithmic decrement"]
+    minimum: Annotated[Given, Of("ratio", at_least=0.0)] = Field(examples=["0.1"])
+    cross_coupling: Annotated[Given, Of("stiffness", at_least=0.0)] | None = None
+    on: Line | None = None
+
+    @model_validator(mode="after")
+    def _has_its_place(self) -> Self:
+        if (self.cross_coupling is None) != (self.on is None):
+            found = "cross coupling and the part that it acts on stand apart"
+            raise problem(found, "give both cross coupling: and on:, or neither")
+        return self
+
+
+class BearingLoad(Limit):
+    """Rotating force of each bearing as a share of its static load, or with it as a force."""
+
+    kind: Literal["bearing load"]
+    share: Annotated[Given, Of("percent", above=0.0)] | None = None
+    limit: Annotated[Given, Of("force", above=0.0)] | None = None
+
+    @model_validator(mode="after")
+    def _one(self) -> Self:
+        exactly_one(self, "share", "limit")
+        return self
+
+
+class ShaftStress(Limit):
+    """Bending stress of the shaft by whirl and sag."""
+
+    kind: Literal["shaft stress"]
+    limit: Annotated[Given, Of("stress", above=0.0)] = Field(examples=["60 MPa"])
+    concentration: Annotated[Given, Of("ratio", at_least=1.0)] | None = None
+
+
+class TimeAboveLimit(Limit):
+    """Longest time of a passage above the case's limit of amplitude."""
+
+    kind: Literal["time above limit"]
+    limit: Annotated[Given, Of("time", at_least=0.0)] = Field(examples=["2 s"])
+
+
+class DriveMargin(Limit):
+    """Drive torque above the least that passes the critical speed."""
+
+    kind: Literal["drive margin"]
+    margin: Annotated[Given, Of("percent", at_least=0.0)] = Field(examples=["20 %"])
+
+
 OneMassCriterion = Annotated[
     SeparationMargin
     | AmplitudeAtSpeed
@@ -124,4 +184,25 @@ OneMassCriterion = Annotated[
     Field(discriminator="kind"),
 ]
 
-__all__ = ["Limit", "Measure", "OneMassCriterion", "Section"]
+LateralCriterion = Annotated[
+    SeparationMargin
+    | AmplitudeAtSpeed
+    | Clearance
+    | LogarithmicDecrement
+    | BearingLoad
+    | ShaftStress
+    | BalanceGrade
+    | ProjectLimit,
+    Field(discriminator="kind"),
+]
+
+PassageCriterion = Annotated[
+    SeparationMargin
+    | AmplitudeAtSpeed
+    | PassageClearance
+    | TimeAboveLimit
+    | DriveMargin
+    | BalanceGrade
+    | ProjectLimit,
+    Field(discriminator="kind"),
+]

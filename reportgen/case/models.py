@@ -7,11 +7,15 @@ from typing import Any
 from pydantic.json_schema import models_json_schema
 
 from reportgen.case.case import Case
+from reportgen.case.lateral import LateralCase
 from reportgen.case.local import LocalCase
 from reportgen.case.onemass import OneMassCase
+from reportgen.case.passage import PassageCase
 
 MODELS: dict[str, type[Case]] = {
     "one-mass-whirl": OneMassCase,
+    "lateral-review": LateralCase,
+    "transient-passage": PassageCase,
 }
 """The model of each shipped template."""
 

@@ -12,6 +12,8 @@ from reportgen.case.case import Case
 from reportgen.case.common import Assumption, Speeds, exactly_one, problem
 from reportgen.case.criteria import OneMassCriterion
 from reportgen.case.given import Given, Of
+from reportgen.case.ramps import require_ramp
+from reportgen.case.unique import require_unique
 
 Mass = Annotated[Given, Of("mass", above=0.0)]
 Stiffness = Annotated[Given, Of("stiffness", above=0.0)]
@@ -183,7 +185,6 @@ class Unbalance(GivenSection):
 
 
 _PassageSpeed = Annotated[Given, Of("speed", at_least=0.0)]
-_MOST_TURNS = 1e7
 
 
 class PassageGiven(GivenSection):
@@ -200,27 +201,7 @@ class PassageGiven(GivenSection):
 
     @model_validator(mode="after")
     def _gets_there(self) -> Self:
-        start, end, rate = float(self.from_), float(self.to), float(self.acceleration)
-        if start == end:
-            raise problem(
-                "the passage ends at the speed it starts from", "give another speed", "to"
-            )
-        if rate == 0:
-            found = "the acceleration is zero: the passage never ends"
-            raise problem(found, "give the acceleration, negative for a coast-down", "acceleration")
-        if (end > start) != (rate > 0):
-            way = "rises" if end > start else "falls"
-            found = f"the speed {way} from {self.from_.as_given} to {self.to.as_given} but the "
-            found += f"acceleration is {self.acceleration.as_given}"
-            remedy = f"give {'a positive' if end > start else 'a negative'} acceleration"
-            raise problem(found, remedy, "acceleration")
-        turns = abs((end**2 - start**2) / (2 * rate)) / (2 * math.pi)
-        if turns < 1:
-            found = f"the passage is over after {turns:.2g} of a turn"
-            raise problem(found, "give an acceleration that a drive can reach", "acceleration")
-        if turns > _MOST_TURNS:
-            found = f"the passage takes {turns:.2g} turns"
-            raise problem(found, "judge so slow a passage by the steady response", "acceleration")
+        require_ramp(self.from_, self.to, self.acceleration)
         return self
 
 
@@ -237,11 +218,7 @@ class OneMassCase(Case):
 
     @model_validator(mode="after")
     def _names_are_unique(self) -> Self:
-        for key, names in (
-            ("passages", [p.name for p in self.passages]),
-            ("assumptions", [a.id for a in self.assumptions]),
-        ):
-            if len(set(names)) < len(names):
-                again = next(n for i, n in enumerate(names) if n in names[:i])
-                raise problem(f"{again!r} stands twice in {key}", "give each its own name", key)
+        require_unique(
+            passages=[p.name for p in self.passages], assumptions=[a.id for a in self.assumptions]
+        )
         return self
