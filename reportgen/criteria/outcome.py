@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import Literal
 
@@ -118,7 +119,7 @@ class Limit:
         return self._outcome(
             value,
             limit,
-            margin=room / abs(limit) if limit else None,
+            margin=_share(room, abs(limit)),
             used=self._used(value, limit),
             verdict="meets" if met else "does not meet",
             reason=reason,
@@ -142,9 +143,8 @@ class Limit:
 
     def _used(self, value: float, limit: float) -> float | None:
         over, under = (value, limit) if self.sense == "at most" else (limit, value)
-        if under == 0.0 or over / under < 0.0:
-            return None
-        return over / under
+        used = _share(over, under)
+        return None if used is None or used < 0.0 else used
 
     def _outcome(
         self,
@@ -174,3 +174,10 @@ class Limit:
             quantity=self.quantity,
             measure=self.measure,
         )
+
+
+def _share(part: float, whole: float) -> float | None:
+    if whole == 0.0:
+        return None
+    quotient = part / whole
+    return quotient if math.isfinite(quotient) else None

@@ -161,7 +161,7 @@ def _judge(
         return limit.judge(
             kept, asked, reason=f"{_where(critical.speed, side, trip, False)}; {why}", strictly=True
         )
-    if kept >= asked:
+    if kept >= asked * (1.0 - ROUNDING):
         return limit.judge(
             kept, asked, reason=f"{why}; it lies beyond the largest margin the rule can ask for"
         )
@@ -242,7 +242,7 @@ def _sides_without(
     outcomes = []
     for side, kept, asked in reach:
         limit = _side_limit(side, rule)
-        if side not in sides and kept < asked:
+        if side not in sides and kept < asked * (1.0 - ROUNDING):
             short = "which does not reach as far as a margin may be asked for"
             outcomes.append(
                 limit.not_assessed(f"critical speeds were looked for {span}, {short}", limit=asked)

@@ -116,6 +116,16 @@ def test_a_flat_top_is_a_peak():
     assert (peak.speed, peak.amplitude) == (6.0, 4.0)
 
 
+def test_half_power_speeds_may_be_the_ends_of_the_record():
+    amplitude = np.array([7.0, 8.0, 9.0, 10.0, 9.0, 8.0, 7.0])
+    (peak,) = recorded_peaks(Record(np.arange(1.0, 8.0), amplitude))
+    assert (peak.lower, peak.upper) == (
+        pytest.approx(10.0 / 2**0.5 - 6.0, abs=1e-9),
+        pytest.approx(14.0 - 10.0 / 2**0.5, abs=1e-9),
+    )
+    assert peak.amplification == pytest.approx(4.0 / (20.0 - 20.0 / 2**0.5))
+
+
 def test_jumps_of_a_whole_turn_in_the_phase_are_no_turn():
     speed, amplitude, phase = run((100.0, 0.05, 1.0))
     wrapped = (phase + 1.6) % (2 * math.pi)

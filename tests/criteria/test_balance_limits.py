@@ -27,6 +27,19 @@ def test_an_unbalance_is_judged_against_its_grade():
     assert balance_grade(whole / 4, 6.3e-3, 60.0, speed).margin == pytest.approx(0.75)
 
 
+def test_the_grade_is_told():
+    assert balance_grade(1e-6, 6.3e-3, 60.0, 157.0).how.endswith("G6.3")
+    assert "G4100" in balance_grade(1e-6, 4.1, 60.0, 157.0).reason
+    assert "0.3 to 0.7" in whole_in_planes(0.5)[0].how
+    assert "brought to that bound" not in whole_in_planes(0.5)[0].how
+    assert "brought to that bound" in whole_in_planes(0.05)[0].how
+    assert "0.3 to 1.3" in whole_in_planes(1.2)[0].how
+
+
+def whole_in_planes(centre):
+    return balance_grade_in_planes(None, allocate(1.0, 0.0, 1.0, centre), 0.0, 1.0)
+
+
 @pytest.mark.parametrize("grade", [0.3e-3, 4.1])
 def test_a_grade_outside_the_series_is_not_assessed(grade):
     outcome = balance_grade(1e-6, grade, 60.0, 157.0)

@@ -41,6 +41,8 @@ def test_a_touch_voids_the_linear_result_and_says_so():
     assert "void" in clearance_share(400e-6, 400e-6).reason
     assert clearance_share(350e-6, 400e-6).reason == ""
     assert contact(400e-6, 400e-6).verdict == "does not meet"
+    assert "void" in contact(400e-6, 400e-6).reason
+    assert contact(399e-6, 400e-6).reason == ""
     assert contact(399e-6, 400e-6).verdict == "meets"
 
 

@@ -38,6 +38,12 @@ def test_a_rotating_force_is_judged_as_a_share_of_the_static_load():
     assert part(1.0, 0.0).verdict == "not assessed"
 
 
+def test_how_a_load_is_limited_is_told():
+    assert load(1.0, 1.0, 9.0, allowed=0.8).how.startswith("80 % of the allowable load")
+    assert part(1.0, 9.0).how == "50 % of the static load"
+    assert stress(1.0, 1.0, 9.0, concentration=2.5).how.startswith("stated allowable, against 2.5")
+
+
 def test_stresses_add_and_concentrate():
     outcome = stress(20e6, 10e6, 70e6, concentration=2.0)
     assert (outcome.value, outcome.verdict) == (60e6, "meets")

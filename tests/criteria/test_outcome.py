@@ -9,7 +9,8 @@ from reportgen.criteria import Limit, project_limit, project_source
 from reportgen.errors import ModelError
 
 SPEC = project_source("Specification 7", "4.2", "2024")
-numbers = st.floats(-1e9, 1e9)
+sizes = st.floats(1e-9, 1e9)
+numbers = st.one_of(st.just(0.0), sizes, sizes.map(lambda size: -size))
 
 
 def limit(sense):
@@ -50,6 +51,22 @@ def test_a_limit_of_zero_has_a_verdict_and_no_share():
     assert (outcome.verdict, outcome.margin, outcome.share_used) == ("does not meet", None, None)
     assert limit("at most").judge(0.0, 0.0).verdict == "meets"
     assert limit("at least").judge(0.5, 0.0).verdict == "meets"
+
+
+def test_a_share_too_large_for_a_number_is_left_out():
+    outcome = limit("at most").judge(1e9, 5e-324)
+    assert (outcome.verdict, outcome.margin, outcome.share_used) == ("does not meet", None, None)
+
+
+def test_what_is_not_there_meets_its_limit_without_a_number():
+    outcome = limit("at least").met_for_want_of("there is none")
+    assert (outcome.verdict, outcome.value, outcome.limit, outcome.margin) == (
+        "meets",
+        None,
+        None,
+        None,
+    )
+    assert outcome.reason == "there is none"
 
 
 def test_an_outcome_carries_its_source_and_cannot_be_altered():

@@ -162,6 +162,89 @@ def test_a_search_that_stops_short_is_named_beside_the_criticals_found():
     assert len(judge([(700 * RPM, 9.0)], BY_FACTOR, searched=(0.0, 3000 * RPM))) == 1
 
 
+def test_a_search_must_reach_far_enough_on_both_sides():
+    assert [o.verdict for o in judge([], BY_FACTOR, searched=(757 * RPM, None))] == ["not assessed"]
+    (below,) = judge([], BY_FACTOR, searched=(750 * RPM, None))
+    assert (below.verdict, below.value) == ("meets", pytest.approx(150 / 900))
+    assert "from 750 r/min up" in below.reason
+    below, above = judge([], FLAT, searched=(720 * RPM, 1800 * RPM))
+    assert (below.verdict, above.verdict) == ("meets", "meets")
+    assert "from 720 r/min to 1800 r/min" in above.reason
+    _, above = judge([], FLAT, searched=(0.0, 1900 * RPM), trip=2000 * RPM)
+    assert above.verdict == "not assessed"
+
+
+def test_a_method_that_knows_all_criticals_may_find_none():
+    (nothing,) = judge([], BY_FACTOR, searched=(0.0, None))
+    assert (nothing.verdict, nothing.value, nothing.limit) == ("meets", None, None)
+    assert "no critical speed" in nothing.reason
+    assert len(judge([(700 * RPM, 9.0)], BY_FACTOR, searched=(0.0, None))) == 1
+
+
+@pytest.mark.parametrize("span", [(-1.0, 9.0), (9.0, 1.0), (0.0, 0.0), (math.nan, 1.0)])
+def test_a_search_that_is_none_is_refused(span):
+    with pytest.raises(ModelError):
+        judge([], BY_FACTOR, searched=span)
+
+
+@pytest.mark.parametrize(
+    ("critical", "factor", "rule", "words", "formula"),
+    [
+        (700, 4.0, BY_FACTOR, "17·(1 − 1/(AF − 1.5)) % with AF = 4, at most 16 %", "16"),
+        (2000, 4.0, BY_FACTOR, "10 + 17·(1 − 1/(AF − 1.5)) % with AF = 4, at most 26 %", "10 + 17"),
+        (1600, 2.0, BY_FACTOR, "none for an amplification factor below 2.5 (AF = 2)", ""),
+        (1600, 2.5, BY_FACTOR, "with AF = 2.5", "26"),
+        (1700, None, BY_FACTOR, "by amplification factor, at most 26 %", "26"),
+        (1700, 9.0, FLAT, "20 %, as stated", ""),
+        (
+            1700,
+            2.4,
+            FlatMargin(0.2, 0.2, SPEC, critically_damped=2.5),
+            "none for an amplification factor below 2.5 (AF = 2.4)",
+            "",
+        ),
+    ],
+)
+def test_how_a_margin_is_found_is_told(critical, factor, rule, words, formula):
+    outcome = one(critical, factor, rule)
+    assert outcome.how.startswith(words) or words in outcome.how
+    assert formula in outcome.how_latex
+    assert bool(outcome.how_latex) == bool(formula)
+    assert ("10 + " in outcome.how) == ("10 + " in words or "AF = 2.5" in words)
+
+
+def test_where_a_critical_lies_is_told():
+    assert "1650 r/min lies between" in one(1650, 9.0, FLAT, trip=1650 * RPM).reason
+    assert one(1660, 9.0, FlatMargin(0.1, 0.1, SPEC), trip=1650 * RPM).reason == ""
+    assert "12345 r/min" in separation_margins([(12345 * RPM, 9.0)], 9e2, 2e3, FLAT)[0].reason
+    assert one(700, 9.0, FLAT).reason == ""
+    assert "minimum operating speed" in one(700, 9.0, FLAT).how
+    assert "maximum continuous speed" in one(2000, 9.0, FLAT).how
+
+
+def test_a_factor_at_the_bound_is_not_critically_damped():
+    rule = FlatMargin(0.2, 0.2, SPEC, critically_damped=3.0)
+    assert one(1200, 3.0, rule).verdict == "does not meet"
+    assert one(1200, 2.99, rule).verdict == "meets"
+    assert one(1600, None, rule).verdict == "not assessed"
+
+
+def test_each_side_of_a_flat_rule_has_its_own_margin():
+    rule = FlatMargin(0.10, 0.30, SPEC)
+    below, above = judge([(800 * RPM, 9.0), (1900 * RPM, 9.0)], rule)
+    assert (below.verdict, above.verdict) == ("meets", "does not meet")
+    assert one(1200, 9.0, rule).limit == pytest.approx(0.30)
+
+
+@pytest.mark.parametrize("bad", [-0.1, math.nan])
+def test_a_flat_margin_that_is_none_is_refused(bad):
+    for options in ((bad, 0.2), (0.2, bad)):
+        with pytest.raises(ModelError):
+            FlatMargin(*options, SPEC)
+    with pytest.raises(ModelError):
+        FlatMargin(0.2, 0.2, SPEC, critically_damped=bad)
+
+
 def test_criticals_are_named_in_the_order_of_speed_unless_they_have_names():
     outcomes = judge([(1900 * RPM, 9.0), Critical(500 * RPM, 9.0, "first bending")], BY_FACTOR)
     assert outcomes[0].title == "Separation margin, first bending"

@@ -30,6 +30,12 @@ def test_what_a_decrement_means_is_said_beside_it():
     assert log_decrement(0.2, cross_coupling=1.0).reason == ""
 
 
+def test_how_the_threshold_is_found_is_told():
+    outcome = speed_above_threshold(240.0, 200.0, margin=0.2)
+    assert outcome.how == "20 % above the highest speed reached"
+    assert "1.2" in outcome.how_latex
+
+
 def test_the_threshold_keeps_its_margin_from_the_highest_speed():
     assert speed_above_threshold(240.0, 200.0, margin=0.2).verdict == "meets"
     assert speed_above_threshold(239.0, 200.0, margin=0.2).verdict == "does not meet"
