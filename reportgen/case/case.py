@@ -36,6 +36,12 @@ class Case(Section):
     assumptions: tuple[Assumption, ...] = ()
     _sides: dict[str, bytes] = PrivateAttr(default_factory=dict)
 
+    def __eq__(self, other: object) -> bool:
+        """Compare what is stated; the bytes of side tables are not part of it."""
+        return type(self) is type(other) and self.__dict__ == other.__dict__
+
+    __hash__ = None  # type: ignore[assignment]
+
     def resolved(self) -> dict[str, Any]:
         """Return the case as plain data in SI; the way back is ``reportgen.case.from_resolved``."""
         return self.model_dump(mode="json")

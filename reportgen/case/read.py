@@ -110,10 +110,13 @@ def _model_for(root: Any, reading: Reading) -> type[Case] | None:
 
 def _gather(error: ValidationError, root: MapNode, reading: Reading) -> None:
     """Add what the models found to the reading, in words."""
+    before = [p for p in reading.problems if p.file == reading.file]
     for one in error.errors(include_url=False):
         if one["type"] in (REPORTED, "missing"):
             continue
         node, place, path = _find(root, one["loc"])
+        if one["type"] == CHECK and isinstance(node, MapNode) and _faulty(node, before):
+            continue  # what hangs together cannot be judged while a key is amiss
         context: dict[str, Any] = one.get("ctx", {})
         message, remedy = _in_words(one["type"], one["msg"], context, node)
         key = words_of(str(context.get("key", "")))
@@ -122,6 +125,11 @@ def _gather(error: ValidationError, root: MapNode, reading: Reading) -> None:
         elif one["type"] == "union_tag_invalid" and isinstance(node, MapNode):
             place, path = node.place("kind"), node.child("kind")
         reading.report(message, remedy, place, path)
+
+
+def _faulty(node: MapNode, problems: list[Problem]) -> bool:
+    under = f"{node.path}." if node.path else ""
+    return any(problem.field.startswith(under) for problem in problems)
 
 
 def _find(root: MapNode, loc: tuple[int | str, ...]) -> tuple[Any, Mark, str]:
@@ -157,6 +165,8 @@ def _in_words(kind: str, message: str, context: dict[str, Any], node: Any) -> tu
         return f"{what} longer than {context['max_length']}", "shorten it"
     if kind in ("string_too_short", "too_short"):
         return "nothing is written here", "write it, or leave the key out"
+    if kind in ("int_parsing", "int_from_float", "int_type"):
+        return f"found {described(node)}", "write a whole number"
     return f"found {described(node)}: {message[:1].lower()}{message[1:]}", ""
 
 

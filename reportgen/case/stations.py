@@ -97,7 +97,7 @@ class StationRotor(GivenSection):
     words: ClassVar[str] = "the rotor"
     prefix: ClassVar[str] = "Rotor"
 
-    materials: dict[Line, MaterialGiven] = Field(min_length=1)
+    materials: dict[str, MaterialGiven] = Field(min_length=1)
     shaft: ShaftGiven
     discs: tuple[DiscGiven, ...] = ()
     added_masses: tuple[AddedMass, ...] = ()

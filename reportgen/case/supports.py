@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from typing import Annotated, Any, ClassVar, Self
 
-from pydantic import Field, model_validator
+from pydantic import Field, GetJsonSchemaHandler, model_validator
+from pydantic_core import CoreSchema
 from pydantic_core.core_schema import ValidationInfo
 
 from reportgen.case.base import GivenSection, Line
@@ -36,6 +37,18 @@ class _Short(GivenSection):
         node["both"] = data
         node.key_marks["both"] = data.mark
         return node
+
+    @classmethod
+    def __get_pydantic_json_schema__(
+        cls, schema: CoreSchema, handler: GetJsonSchemaHandler
+    ) -> dict[str, Any]:
+        reference = handler(schema)
+        whole = handler.resolve_ref_schema(reference)
+        if "properties" in whole:
+            written_out = dict(whole)
+            whole.clear()
+            whole["anyOf"] = [written_out["properties"]["both"], written_out]
+        return reference
 
 
 class _Matrix(_Short):

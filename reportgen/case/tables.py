@@ -20,6 +20,7 @@ from reportgen.errors import InputError, Problem
 from reportgen.units import QUANTITIES, UnitError, parse_quantity, show
 
 _MOST_ROWS = 5000
+_UNREAD = "?"  # of a column whose unit is reported already
 _HEADER = re.compile(r"(?P<name>[^\[(]*?)\s*(?:[\[(](?P<unit>.*)[\])])?\s*")
 
 
@@ -187,7 +188,7 @@ class _Rows:
             for cells in reader:
                 if any(cell.strip() for cell in cells) and not cells[0].lstrip().startswith("#"):
                     rows.append((reader.line_num, [cell.strip() for cell in cells]))
-                if len(rows) > _MOST_ROWS:
+                if len(rows) > _MOST_ROWS + 1:
                     self.report(
                         f"more than {_MOST_ROWS} rows", "thin the table out", reader.line_num
                     )
@@ -252,6 +253,7 @@ class _Rows:
                     parse_quantity(f"1 {unit}", column.quantity)
                 except UnitError as error:
                     self.report(error.found, error.remedy, line, number, name)
+                    unit = _UNREAD
             found.append((column, unit))
         present = {column.name for column, _ in found}
         for column in self.table.columns:
@@ -270,6 +272,8 @@ class _Rows:
         if not cell:
             if column.required:
                 self.report("the cell is empty", "give its value", row, number, column.name)
+            return None
+        if unit == _UNREAD:
             return None
         try:
             value = self._value(cell, column, unit)
