@@ -105,26 +105,35 @@ class Campbell:
         return np.asarray(self.pairs.shaft[self.place[mode, speed]])
 
 
-def _confirm(model: Model, pairs: Eigenpairs, speed: float) -> None:
+def _confirm(model: Model, pairs: Eigenpairs, speed: float, modes: int) -> None:
     """Count the roots in a window round those found and compare."""
     lam = pairs.exponents[pairs.speeds == speed]
-    swing = np.sort_complex(lam[lam.imag > 0] * -1j).real  # frequencies, rising
+    swing = np.sort(lam[lam.imag > 0].imag)
     if swing.size < 2:
         return
-    low = 0.3 * swing[0]
-    # The top edge runs through the widest of the last gaps.
-    tail = swing[-min(4, swing.size) :]
-    gap = int(np.argmax(np.diff(tail)))
-    high = (tail[gap] + tail[gap + 1]) / 2
-    inside = lam[(lam.imag > low) & (lam.imag < high)]
-    margin = 0.2 * swing[0]
-    left, right = inside.real.min() - margin, max(inside.real.max(), 0.0) + margin
-    there = count_in_window(model, speed, (left, right), (low, high))
-    if there != inside.size:
-        raise ModelError(
-            f"{there} modes exist below {high:.6g} rad/s at a speed of {speed:.6g} rad/s but "
-            f"{inside.size} were found; refine the model's elements or ask for fewer modes"
-        )
+    # The top edge runs through the widest gap above the modes asked for.
+    tail = swing[min(modes, swing.size - 1) - 1 :]
+    gap = int(np.argmax(tail[1:] / tail[:-1]))
+    failure: ModelError | None = None
+    for part in (0.5, 0.37, 0.61):
+        low = 0.6 * part * swing[0]
+        high = tail[gap] * (tail[gap + 1] / tail[gap]) ** part
+        inside = lam[(lam.imag > low) & (lam.imag < high)]
+        margin = 0.4 * part * swing[0]
+        left, right = inside.real.min() - margin, max(inside.real.max(), 0.0) + margin
+        try:
+            there = count_in_window(model, speed, (left, right), (low, high), lam)
+        except ModelError as error:  # an unlucky edge: another window may do
+            failure = error
+            continue
+        if there != inside.size:
+            raise ModelError(
+                f"{there} modes exist below {high:.6g} rad/s at a speed of {speed:.6g} rad/s but "
+                f"{inside.size} were found; refine the elements or ask for fewer modes"
+            )
+        return
+    assert failure is not None
+    raise failure
 
 
 def campbell(model: Model, speeds: ArrayLike, modes: int = 12, *, confirm: bool = True) -> Campbell:
@@ -161,7 +170,7 @@ def campbell(model: Model, speeds: ArrayLike, modes: int = 12, *, confirm: bool 
     counted = tuple(float(row[i]) for i in sorted({0, row.size // 2, row.size - 1}))
     if confirm:
         for speed in counted:
-            _confirm(model, pairs, speed)
+            _confirm(model, pairs, speed, modes)
     place = follow(pairs, row, model.positions[-1] / 4).place
     wanted = np.zeros(pairs.exponents.size, dtype=bool)
     for v in row:

@@ -7,15 +7,14 @@ from itertools import pairwise
 import numpy as np
 
 from reportgen.errors import ModelError
-from reportgen.rotor.stations.coefficients import Real
 from reportgen.rotor.stations.dynamics import DynamicStiffness
 from reportgen.rotor.stations.harmonic import CHUNK
 from reportgen.rotor.stations.model import Model
 from reportgen.rotor.stations.shaft import Complex
 
 # Steps of the argument along the contour: beyond this a step is halved.
-_LARGEST_TURN = 1.2
-_MOST_POINTS = 60_000
+_LARGEST_TURN = 1.0
+_MOST_HALVINGS = 40
 
 
 def _phase(model: Model, points: Complex, speed: float) -> Complex:
@@ -28,12 +27,28 @@ def _phase(model: Model, points: Complex, speed: float) -> Complex:
     return out
 
 
+def _edge(start: complex, end: complex, known: Complex) -> Complex:
+    """Points of one edge, without its end: geometric from both ends and close to known roots."""
+    part = np.concatenate([np.geomspace(1e-4, 0.5, 24), np.linspace(0, 1, 33)[:-1]])
+    part = np.concatenate([part, 1 - np.geomspace(1e-4, 0.5, 24)])
+    along = (known - start) / (end - start)
+    for reach in (-4, -1.5, -0.5, 0, 0.5, 1.5, 4):
+        part = np.concatenate([part, along.real + reach * np.abs(along.imag)])
+    part = np.unique(part[(part >= 0) & (part < 1)])
+    return np.asarray(start + (end - start) * part)
+
+
 def count_in_window(
-    model: Model, speed: float, decay: tuple[float, float], frequency: tuple[float, float]
+    model: Model,
+    speed: float,
+    decay: tuple[float, float],
+    frequency: tuple[float, float],
+    known: Complex | None = None,
 ) -> int:
     """Count eigenvalues with Re λ and Im λ in a window by the principle of the argument.
 
     det Z(λ) has no poles, so its argument turns once round for each root inside the contour.
+    The contour is halved wherever a step turns far, or its halves do not add up to it.
 
     Parameters
     ----------
@@ -43,6 +58,9 @@ def count_in_window(
         Ω [rad/s].
     decay, frequency
         Lowest and highest Re λ and Im λ [1/s].
+    known
+        Roots near which the contour is followed more closely from the start; they take no
+        other part in the count.
 
     Raises
     ------
@@ -50,23 +68,30 @@ def count_in_window(
         If the contour passes so close to a root that the turns cannot be told.
     """
     (left, right), (low, high) = decay, frequency
-    corners = np.array([left + 1j * low, right + 1j * low, right + 1j * high, left + 1j * high])
-    ends = np.append(corners, corners[0])
-    points = np.concatenate(
-        [a + (b - a) * np.linspace(0, 1, 48, endpoint=False) for a, b in pairwise(ends)]
-    )
-    points = np.append(points, corners[0])
+    hints = np.zeros(0, dtype=np.complex128) if known is None else known
+    corners = [left + 1j * low, right + 1j * low, right + 1j * high, left + 1j * high]
+    edges = [_edge(a, b, hints) for a, b in pairwise([*corners, corners[0]])]
+    points = np.append(np.concatenate(edges), corners[0])
     phase = _phase(model, points, speed)
-    while True:
-        turn: Real = np.angle(phase[1:] / phase[:-1])
-        wide = np.flatnonzero(np.abs(turn) > _LARGEST_TURN)
-        if wide.size == 0:
-            return round(float(turn.sum()) / (2 * np.pi))
-        if points.size > _MOST_POINTS or not np.all(np.isfinite(turn)):
-            raise ModelError(
-                "an eigenvalue lies on the edge of the window in which modes are counted; "
-                "move the window"
-            )
-        middle = (points[wide] + points[wide + 1]) / 2
-        points = np.insert(points, wide + 1, middle)
-        phase = np.insert(phase, wide + 1, _phase(model, middle, speed))
+    start, end, at_start, at_end = points[:-1], points[1:], phase[:-1], phase[1:]
+    total = 0.0
+    for _ in range(_MOST_HALVINGS):
+        middle = (start + end) / 2
+        at_middle = _phase(model, middle, speed)
+        whole = np.angle(at_end / at_start)
+        first, second = np.angle(at_middle / at_start), np.angle(at_end / at_middle)
+        good = (np.abs(first) < _LARGEST_TURN) & (np.abs(second) < _LARGEST_TURN)
+        good &= np.abs(first + second - whole) < 1e-6
+        total += float((first + second)[good].sum())
+        if good.all():
+            return round(total / (2 * np.pi))
+        bad = ~good
+        start, end, at_start, at_end = (
+            np.concatenate([start[bad], middle[bad]]),
+            np.concatenate([middle[bad], end[bad]]),
+            np.concatenate([at_start[bad], at_middle[bad]]),
+            np.concatenate([at_middle[bad], at_end[bad]]),
+        )
+    raise ModelError(
+        "an eigenvalue lies on the edge of the window in which modes are counted; move the window"
+    )

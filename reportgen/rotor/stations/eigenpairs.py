@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -182,4 +182,6 @@ def lowest_pairs(model: Model, speeds: Real, count: int, *, enrich: int = 8) -> 
         pedestals[at, which],
         np.zeros(at.size),
     )
-    return refine(model, start)
+    found = refine(model, start)
+    # Newton keeps a real root real but for rounding.
+    return replace(found, exponents=np.where(real, found.exponents.real, found.exponents))

@@ -123,6 +123,8 @@ def eliminate(
         Multiplied in place by the unit factors of the determinants met.
     """
     run = Segment(first, last)
+    if last < first:
+        return run
     from_left: Blocks | None = None
     if first > 0:
         from_left = np.swapaxes(blocks.gap(first - 1), 1, 2)
