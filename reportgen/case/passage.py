@@ -44,6 +44,9 @@ class Ramp(GivenSection):
     from_: _Speed = Field(title="from speed", examples=["0 rpm"])
     to: _Speed = Field(title="to speed", examples=["1480 rpm"])
     acceleration: Annotated[Given, Of("acceleration_speed")] = Field(examples=["25 rpm/s"])
+    hold: Annotated[Given, Of("time", at_least=0.0)] | None = Field(
+        None, title="time at the end speed"
+    )
 
     @model_validator(mode="after")
     def _gets_there(self) -> Self:
@@ -90,11 +93,13 @@ class Drag(GivenSection):
     @model_validator(mode="after")
     def _slows(self) -> Self:
         low, high = float(self.to), float(self.from_)
-        if low >= high:
+        if high <= low:
             raise problem("a coast-down ends at a lower speed than it starts", "check both", "to")
         require_covered(self.torque, "torque", low, high)
-        speeds, torques = self.torque.column("speed"), self.torque.column("torque")
-        if any(t <= 0 for s, t in zip(speeds, torques, strict=True) if low < s <= high):
+        rows = list(zip(self.torque.column("speed"), self.torque.column("torque"), strict=True))
+        upper = next(i for i, (speed, _) in enumerate(rows) if speed >= high * (1 - 1e-9))
+        inside = [torque for speed, torque in rows[: upper + 1] if speed > low]
+        if min(inside) <= 0:
             found = (
                 "the drag torque is not above zero between the two speeds: the shaft never slows"
             )
@@ -127,6 +132,9 @@ class PassageProgramme(GivenSection):
     @model_validator(mode="after")
     def _one(self) -> Self:
         exactly_one(self, "ramp", "table", "drive", "coast_down")
+        if self.table is not None and len(set(self.table.column("speed"))) == 1:
+            found = "the speed of the table never changes"
+            raise problem(found, "give a run through speeds", "table")
         return self
 
     def speeds(self) -> tuple[float, float]:
