@@ -11,6 +11,8 @@ from typing import Any
 
 import numpy as np
 
+from reportgen.run.fingerprint import code_digest
+
 
 def environment() -> dict[str, Any]:
     """Record the packages, the interpreter, the system and the linear algebra of this process.
@@ -18,7 +20,7 @@ def environment() -> dict[str, Any]:
     Returns
     -------
     dict[str, Any]
-        ``format`` 1; ``python`` (implementation, version, compiler); ``platform`` (system,
+        ``format`` 1; ``code_sha512``, of reportgen's own code; ``python`` (implementation, version, compiler); ``platform`` (system,
         machine, C library); ``blas`` (name, version, build); ``simd`` (instruction sets found,
         on which last digits can depend); ``packages``, by name: each one's ``name``,
         ``version``, and ``record_sha256``, the digest of the list of its files and their
@@ -27,6 +29,7 @@ def environment() -> dict[str, Any]:
     """
     return {
         "format": 1,
+        "code_sha512": code_digest(),
         "python": {
             "implementation": platform.python_implementation(),
             "version": platform.python_version(),
