@@ -11,6 +11,8 @@ from typing import Any
 import jsonschema
 import numpy as np
 import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
 from ruamel.yaml import YAML
 
 from reportgen.case import from_resolved, read_case, schema, side_files
@@ -408,3 +410,28 @@ def test_a_side_table_in_a_folder_keeps_its_name(write: Write, tmp_path: Path) -
     (tmp_path / "tables").mkdir()
     shutil.move(tmp_path / "shaft.csv", tmp_path / "tables" / "shaft.csv")
     assert set(side_files(read_case(path))) == {"tables/shaft.csv", "bearing.csv"}
+
+
+@settings(
+    deadline=None, max_examples=60, suppress_health_check=[HealthCheck.function_scoped_fixture]
+)
+@given(
+    content=st.binary(max_size=120)
+    | st.text('0123456789.,;e-+ \n\t"#[]kxyzc rpmNs/m', max_size=200).map(str.encode),
+    after_header=st.booleans(),
+)
+def test_any_bytes_in_a_side_table_are_read_or_explained(
+    write: Write, content: bytes, after_header: bool
+) -> None:
+    path = write()
+    header = BEARING.splitlines()[0].encode() + b"\n"
+    (path.parent / "bearing.csv").write_bytes(header * after_header + content)
+    try:
+        case: Any = read_case(path)
+    except InputError as error:
+        found = error
+    else:
+        assert len(case.rotor.bearings[0].table) >= 2
+        return
+    assert all(Path(one.file).name in ("bearing.csv", "case.yaml") for one in found.problems)
+    assert all(one.message for one in found.problems)
