@@ -20,12 +20,12 @@ def environment() -> dict[str, Any]:
     Returns
     -------
     dict[str, Any]
-        ``format`` 1; ``code_sha512``, of reportgen's own code; ``python`` (implementation, version, compiler); ``platform`` (system,
-        machine, C library); ``blas`` (name, version, build); ``simd`` (instruction sets found,
-        on which last digits can depend); ``packages``, by name: each one's ``name``,
-        ``version``, and ``record_sha256``, the digest of the list of its files and their
-        digests, which is None where the installer left no such list. No paths, no names of
-        computers or users, no times.
+        ``format`` 1; ``code_sha512``, of reportgen's own code; ``python`` (implementation,
+        version, compiler); ``platform`` (system, machine, C library); ``blas`` (name, version,
+        build); ``simd`` (instruction sets found, on which last digits can depend);
+        ``packages``, by name: each one's ``name``, ``version``, and ``record_sha256``, the
+        digest of the list of its files and their digests, which is None where the installer
+        left no such list. No paths, no names of computers or users, no times.
     """
     return {
         "format": 1,
