@@ -11,7 +11,7 @@ from numpy.typing import ArrayLike, NDArray
 from reportgen.errors import ModelError
 from reportgen.rotor.stations.coefficients import Real
 from reportgen.rotor.stations.counting import count_in_window
-from reportgen.rotor.stations.eigenpairs import Eigenpairs, lowest_pairs, refine
+from reportgen.rotor.stations.eigenpairs import Eigenpairs, lowest_pairs, oscillates, refine
 from reportgen.rotor.stations.model import Model
 from reportgen.rotor.stations.shaft import Complex
 from reportgen.rotor.stations.tracking import follow, separate_twins
@@ -30,7 +30,7 @@ def log_decrement(exponents: Complex) -> Real:
     ModelError
         If a mode does not oscillate: it has no decrement.
     """
-    if np.any(exponents.imag <= 0):
+    if not np.all(oscillates(exponents)):
         raise ModelError("an overdamped mode has no logarithmic decrement; leave it out")
     return np.asarray(-2 * np.pi * exponents.real / exponents.imag)
 
@@ -41,7 +41,7 @@ def whirl_sense(shaft: Complex, exponent: complex) -> Sense:
     Stations below 5 % of the largest orbit do not count, as near a node. An orbit whose
     short half-axis is under 0.1 % of the long one is a straight line and has no sense.
     """
-    if exponent.imag == 0:
+    if not oscillates(np.asarray(exponent)):
         return "overdamped"
     f, b = np.abs(shaft[:, 0]), np.abs(shaft[:, 2])
     size = f + b
@@ -88,13 +88,13 @@ class Campbell:
 
     @property
     def frequencies(self) -> Real:
-        """Damped frequency ω_d [rad/s], (T, S); 0 where absent or overdamped."""
+        """Damped frequency ω_d [rad/s], (T, S); 0 where absent, (nearly) 0 where overdamped."""
         return np.asarray(self.exponents.imag)
 
     @property
     def decrements(self) -> tuple[Real, NDArray[np.bool_]]:
         """Logarithmic decrement (T, S) and where it exists (present and oscillating)."""
-        swings = self.exponents.imag > 0
+        swings = self.present & oscillates(self.exponents)
         safe = np.where(swings, self.exponents, 1j)
         return np.where(swings, log_decrement(safe), 0.0), swings
 
@@ -108,7 +108,7 @@ class Campbell:
 def _confirm(model: Model, pairs: Eigenpairs, speed: float, modes: int) -> None:
     """Count the roots in a window round those found and compare."""
     lam = pairs.exponents[pairs.speeds == speed]
-    swing = np.sort(lam[lam.imag > 0].imag)
+    swing = np.sort(lam[oscillates(lam)].imag)
     if swing.size < 2:
         return
     # The top edge runs through the widest gap above the modes asked for.
@@ -175,12 +175,12 @@ def campbell(model: Model, speeds: ArrayLike, modes: int = 12, *, confirm: bool 
     wanted = np.zeros(pairs.exponents.size, dtype=bool)
     for v in row:
         at = np.flatnonzero(pairs.speeds == v)
-        swing = at[pairs.exponents[at].imag > 0]
+        swing = at[oscillates(pairs.exponents[at])]
         top = swing[np.argsort(pairs.exponents[swing].imag)][:modes]
         wanted[top] = True
         if top.size:
             ceiling = pairs.exponents[top].imag.max()
-            still = at[(pairs.exponents[at].imag == 0) & (np.abs(pairs.exponents[at]) < ceiling)]
+            still = at[~oscillates(pairs.exponents[at]) & (np.abs(pairs.exponents[at]) < ceiling)]
             wanted[still] = True
     place = place[(wanted[place] & (place >= 0)).any(1)]
     present = place >= 0
@@ -237,7 +237,7 @@ def _crossings(
     for t in range(value.shape[0]):
         for s in range(value.shape[1] - 1):
             both = chart.present[t, s] and chart.present[t, s + 1]
-            swings = chart.exponents[t, s : s + 2].imag > 0
+            swings = oscillates(chart.exponents[t, s : s + 2])
             if not both or not swings.all() or value[t, s] * value[t, s + 1] > 0:
                 continue
             if value[t, s] == 0 and s > 0:
@@ -249,7 +249,7 @@ def _crossings(
                 speed = hi - f_hi * (hi - lo) / (f_hi - f_lo) if f_hi != f_lo else lo
                 pair = _at_speed(chart, t, s, speed)
                 f = measure(complex(pair.exponents[0]), speed)
-                if abs(f) < 1e-10 * abs(pair.exponents[0]) or hi - lo < 1e-12 * hi:
+                if abs(f) < 1e-10 * abs(pair.exponents[0]) or abs(hi - lo) < 1e-14 * hi:
                     break
                 if f * f_hi < 0:
                     lo, f_lo = hi, f_hi

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from reportgen.errors import ModelError
 from reportgen.rotor.stations.coefficients import Real
@@ -17,6 +18,19 @@ from reportgen.rotor.stations.shaft import Complex
 # Newton's correction at which a root counts as found: its square is below rounding.
 _SETTLED = 1e-7
 _MOST_STEPS = 12
+
+# Two equal real roots leave the reduced problem as a pair this far off the real axis.
+_ROUNDED = 1e-5
+
+
+# |Im λ| / |λ| below which a mode does not oscillate: ζ > 0.99995, less than 1e-270 is left
+# after one turn. Gyroscopic terms give such modes a trace of frequency.
+_OVERDAMPED = 1e-2
+
+
+def oscillates(exponents: Complex) -> NDArray[np.bool_]:
+    """Tell which λ oscillate; the others are overdamped."""
+    return np.asarray(exponents.imag > _OVERDAMPED * np.abs(exponents))
 
 
 @dataclass(frozen=True, eq=False)
@@ -33,7 +47,7 @@ class Eigenpairs:
     pedestals: Complex
     correction: Real
 
-    def take(self, which: np.ndarray) -> Eigenpairs:
+    def take(self, which: NDArray[np.int64]) -> Eigenpairs:
         """Pick some of the pairs."""
         return Eigenpairs(
             self.exponents[which],
@@ -163,25 +177,28 @@ def lowest_pairs(model: Model, speeds: Real, count: int, *, enrich: int = 8) -> 
     for s in range(speeds.size):
         lam = exponents[s]
         finite = np.isfinite(lam) & (np.abs(lam) > rest)
-        swing = np.flatnonzero(finite & (lam.imag > 1e-7 * np.abs(lam)))
+        swing = np.flatnonzero(finite & oscillates(lam))
         swing = swing[np.argsort(lam[swing].imag)][:count]
         ceiling = lam[swing[-1]].imag if swing.size else np.inf
         still = np.flatnonzero(
-            finite & (np.abs(lam.imag) <= 1e-7 * np.abs(lam)) & (np.abs(lam) < ceiling)
+            finite
+            & (lam.imag <= _OVERDAMPED * np.abs(lam))
+            & (lam.imag >= -_ROUNDED * np.abs(lam))
+            & (np.abs(lam) < ceiling)
         )
         picks += [(s, int(j)) for j in (*still[np.argsort(np.abs(lam[still]))], *swing)]
     if not picks:
         raise ModelError("no mode but rigid-body motion was found; support the rotor")
     at, which = (np.array(v) for v in zip(*picks, strict=True))
     lam = exponents[at, which]
-    real = np.abs(lam.imag) <= 1e-7 * np.abs(lam)
     start = Eigenpairs(
-        np.where(real, lam.real, lam),
+        np.where(np.abs(lam.imag) <= _ROUNDED * np.abs(lam), lam.real, lam),
         speeds[at],
         shaft[at, which],
         pedestals[at, which],
         np.zeros(at.size),
     )
     found = refine(model, start)
-    # Newton keeps a real root real but for rounding.
-    return replace(found, exponents=np.where(real, found.exponents.real, found.exponents))
+    lam = found.exponents
+    lam = np.where(np.abs(lam.imag) < 1e-9 * np.abs(lam), lam.real, lam)
+    return replace(found, exponents=lam).take(np.flatnonzero(lam.imag >= 0))

@@ -139,7 +139,8 @@ def bow_shape(model: Model, bow: Bow) -> Complex:
     q = np.zeros(2 * model.stations, dtype=np.complex128)
     q[known] = offsets
     rest = sp.csc_matrix(K[free][:, free])
-    q[free] = spl.splu(rest).solve(-(K[free][:, known] @ offsets))
+    factor, load = spl.splu(rest), -(K[free][:, known] @ offsets)
+    q[free] = factor.solve(load.real) + 1j * factor.solve(load.imag)
     return q.reshape(-1, 2)
 
 

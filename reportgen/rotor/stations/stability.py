@@ -12,7 +12,13 @@ from reportgen.errors import ModelError
 from reportgen.rotor.stations.campbell import Sense, log_decrement, whirl_sense
 from reportgen.rotor.stations.coefficients import Constant, Real
 from reportgen.rotor.stations.dynamics import DynamicStiffness
-from reportgen.rotor.stations.eigenpairs import Eigenpairs, left_vectors, lowest_pairs, motion_of
+from reportgen.rotor.stations.eigenpairs import (
+    Eigenpairs,
+    left_vectors,
+    lowest_pairs,
+    motion_of,
+    oscillates,
+)
 from reportgen.rotor.stations.inputs import Rotor, seal
 from reportgen.rotor.stations.model import Model, assemble
 from reportgen.rotor.stations.shaft import Complex
@@ -96,7 +102,7 @@ def _least_stable(
 ) -> tuple[float, float, Sense]:
     model = assemble(with_cross_coupling(rotor, station, stiffness))
     pairs = lowest_pairs(model, np.array([speed]), modes)
-    swing = np.flatnonzero(pairs.exponents.imag > 0)
+    swing = np.flatnonzero(oscillates(pairs.exponents))
     if swing.size == 0:
         raise ModelError(f"no oscillating mode at {speed:.6g} rad/s; nothing to judge")
     values = log_decrement(pairs.exponents[swing])
