@@ -34,6 +34,8 @@ def test_a_part_that_is_not_known_is_not_taken_for_zero(part):
 def test_a_clearance_or_peak_not_known_is_not_assessed():
     assert clearance_share(150e-6, None).verdict == "not assessed"
     assert clearance_share(None, 400e-6).verdict == "not assessed"
+    assert clearance_share(None, 400e-6).limit == pytest.approx(300e-6)
+    assert clearance_share(150e-6, None).value == pytest.approx(150e-6)
     assert contact(None, 400e-6).limit == 400e-6
 
 

@@ -47,6 +47,7 @@ def test_how_a_load_is_limited_is_told():
 def test_stresses_add_and_concentrate():
     outcome = stress(20e6, 10e6, 70e6, concentration=2.0)
     assert (outcome.value, outcome.verdict) == (60e6, "meets")
+    assert stress(20e6, 10e6, 70e6).value == 30e6
     assert stress(20e6, 10e6, 70e6, concentration=2.5).verdict == "does not meet"
 
 

@@ -144,6 +144,7 @@ def test_overlapping_criticals_in_the_range_do_not_meet_unless_their_factors_wou
     sharp = [(1200 * RPM, 8.0), (1220 * RPM, 8.0)]
     damped = [(1200 * RPM, 2.0), (1220 * RPM, 2.0)]
     assert [o.verdict for o in judge(sharp, BY_FACTOR)] == ["does not meet"] * 2
+    assert "critically damped" not in judge(sharp, BY_FACTOR)[0].reason
     assert [o.verdict for o in judge(damped, BY_FACTOR)] == ["not assessed"] * 2
 
 
@@ -172,6 +173,8 @@ def test_a_search_must_reach_far_enough_on_both_sides():
     assert "from 720 r/min to 1800 r/min" in above.reason
     _, above = judge([], FLAT, searched=(0.0, 1900 * RPM), trip=2000 * RPM)
     assert above.verdict == "not assessed"
+    assert above.limit == pytest.approx(500 / 1500)
+    assert judge([], FLAT, searched=(0.0, 2000 * RPM), trip=2000 * RPM)[1].verdict == "meets"
 
 
 def test_a_method_that_knows_all_criticals_may_find_none():
