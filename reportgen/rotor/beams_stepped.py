@@ -1,8 +1,9 @@
 """Static stiffness of a stepped shaft on rigid or spring bearings.
 
-The shaft is cut at every step, bearing, load and point asked for. Between cuts EI is constant, and
-the cubic beam element is the exact solution there (Euler-Bernoulli), so that the deflections at the
-cuts are exact whatever the number of pieces. The system is banded and positive definite.
+The bending moment follows from the loads and the bearings' forces by statics, and the deflection
+from EI w'' = M by exact integration over the pieces of constant EI (Euler-Bernoulli). The bearings'
+forces and the shaft's position as a rigid body are solved for together, so any number of bearings
+will do, and steps that lie close together cost no accuracy.
 """
 
 from __future__ import annotations
@@ -13,7 +14,6 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
-from scipy.linalg import LinAlgError, solveh_banded
 
 from reportgen.errors import ModelError
 from reportgen.rotor import onemass_checks as check
@@ -151,11 +151,9 @@ def flexibility(shaft: SteppedShaft, position: float) -> NDArray[np.float64]:
     ModelError
         If the point is off the shaft.
     """
-    beam = _Beam(shaft, [position])
-    node = 2 * int(beam.nodes_at([position])[0])
-    unit = np.zeros((beam.size, 2))
-    unit[node, 0] = unit[node + 1, 1] = 1.0
-    return np.asarray(beam.solved(unit)[node : node + 2])
+    beam = _Beam(shaft)
+    loads = [beam.loaded(position, of_moment=kind) for kind in (False, True)]
+    return np.array([[load.shape(position, kind) for load in loads] for kind in (False, True)])
 
 
 def stiffness_at(shaft: SteppedShaft, position: float) -> float:
@@ -178,10 +176,10 @@ def stiffness_at(shaft: SteppedShaft, position: float) -> float:
     ModelError
         If the point is off the shaft or on a rigid bearing.
     """
-    yielding = float(flexibility(shaft, position)[0, 0])
-    if yielding <= 0.0:
-        raise ModelError(f"the point at {position:g} m is on a rigid bearing; it does not yield")
-    return 1.0 / yielding
+    for bearing in shaft.bearings:
+        if math.isinf(bearing.stiffness) and abs(bearing.position - position) < 1e-9 * shaft.length:
+            raise ModelError(f"the point at {position:g} m is on a rigid bearing; it cannot yield")
+    return 1.0 / float(flexibility(shaft, position)[0, 0])
 
 
 def influence(shaft: SteppedShaft, points: ArrayLike) -> NDArray[np.float64]:
@@ -205,11 +203,9 @@ def influence(shaft: SteppedShaft, points: ArrayLike) -> NDArray[np.float64]:
         If a point is off the shaft.
     """
     places = np.atleast_1d(np.asarray(points, dtype=np.float64)).tolist()
-    beam = _Beam(shaft, places)
-    nodes = 2 * beam.nodes_at(places)
-    unit = np.zeros((beam.size, len(places)))
-    unit[nodes, np.arange(len(places))] = 1.0
-    return np.asarray(beam.solved(unit)[nodes])
+    beam = _Beam(shaft)
+    loads = [beam.loaded(place, of_moment=False) for place in places]
+    return np.array([[load.shape(place, slope=False) for load in loads] for place in places])
 
 
 def bending_moments(
@@ -231,89 +227,133 @@ def bending_moments(
     Returns
     -------
     ndarray of float
-        EI w'' at the points, shape (n,) [N·m]; just left of the point where it jumps.
+        EI w'' at the points, shape (n,) [N·m]; just left of a bearing that holds against tilting.
 
     Raises
     ------
     ModelError
         If a point is off the shaft or the force not finite.
     """
+    beam = _Beam(shaft)
+    load = beam.loaded(load_at, of_moment=False)
     places = np.atleast_1d(np.asarray(at, dtype=np.float64)).tolist()
-    beam = _Beam(shaft, [*places, load_at])
-    loads = np.zeros((beam.size, 1))
-    loads[2 * int(beam.nodes_at([load_at])[0]), 0] = check.finite("force", force, "N")
-    return beam.moments(beam.solved(loads)[:, 0])[beam.nodes_at(places)]
+    size = check.finite("force", force, "N")
+    return size * np.array([load.moment(beam.checked(place)) for place in places])
+
+
+@dataclass(frozen=True)
+class _Source:
+    """Unit force or moment on the shaft, to be scaled by its size."""
+
+    position: float
+    of_moment: bool
+
+    def moment(self, x: float) -> float:
+        """Bending moment it puts on a shaft that is free to its left."""
+        if x <= self.position:
+            return 0.0
+        return -1.0 if self.of_moment else x - self.position
 
 
 class _Beam:
-    """The shaft cut into pieces of constant EI: banded stiffness over (deflection, slope)."""
+    """Deflection of the shaft by integration from its left end."""
 
-    def __init__(self, shaft: SteppedShaft, points: Sequence[float]) -> None:
+    def __init__(self, shaft: SteppedShaft) -> None:
+        self.length = shaft.length
         ends = np.concatenate([[0.0], np.cumsum([piece.length for piece in shaft.sections])])
-        self.slack = 1e-9 * shaft.length
-        for point in points:
-            check.finite("position", point, "m")
-            if not -self.slack <= point <= shaft.length + self.slack:
-                raise ModelError(
-                    f"the point at {point:g} m is off the shaft, which is {shaft.length:g} m long"
-                )
-        cuts = np.sort(np.concatenate([ends, points, [b.position for b in shaft.bearings]]))
-        cuts = np.clip(cuts, 0.0, ends[-1])
-        self.nodes = cuts[np.concatenate([[True], np.diff(cuts) > self.slack])]
-        middles = 0.5 * (self.nodes[1:] + self.nodes[:-1])
-        owner = np.clip(np.searchsorted(ends, middles) - 1, 0, len(shaft.sections) - 1)
-        self.rigidity = np.array([piece.rigidity for piece in shaft.sections])[owner]
-        self.lengths = np.diff(self.nodes)
-        self.size = 2 * self.nodes.size
-        self.band = self._assembled()
-        self.held: list[int] = []
+        self.left, self.right = ends[:-1], ends[1:]
+        self.rigidity = np.array([piece.rigidity for piece in shaft.sections])
+        self.sources: list[_Source] = []
+        self.yields: list[float] = []
         for bearing in shaft.bearings:
-            node = 2 * int(self.nodes_at([bearing.position])[0])
-            for row, spring in ((node, bearing.stiffness), (node + 1, bearing.tilting)):
-                if math.isinf(spring):
-                    self.held.append(row)
-                else:
-                    self.band[0, row] += spring
+            self.sources.append(_Source(bearing.position, of_moment=False))
+            self.yields.append(1.0 / bearing.stiffness)
+            if bearing.tilting > 0.0:
+                self.sources.append(_Source(bearing.position, of_moment=True))
+                self.yields.append(1.0 / bearing.tilting)
+        self.matrix = self._system()
 
-    def nodes_at(self, points: Sequence[float]) -> NDArray[np.intp]:
-        """Give the number of the node at each point."""
-        apart = np.abs(self.nodes[None, :] - np.asarray(points)[:, None])
-        return np.asarray(np.argmin(apart, axis=1), dtype=np.intp)
-
-    def solved(self, loads: NDArray[np.float64]) -> NDArray[np.float64]:
-        """Give deflections and slopes under loads, one column a case."""
-        band, right = self.band.copy(), loads.copy()
-        for row in self.held:
-            # A held freedom leaves the system: its row and column become those of the unit matrix.
-            band[:, row] = 0.0
-            for below in range(1, min(4, row + 1)):
-                band[below, row - below] = 0.0
-            band[0, row] = 1.0
-            right[row] = 0.0
-        try:
-            return np.asarray(solveh_banded(band, right, lower=True))
-        except LinAlgError:
+    def checked(self, point: float) -> float:
+        """Return the point, or refuse one that is off the shaft."""
+        check.finite("position", point, "m")
+        if not -1e-9 * self.length <= point <= (1.0 + 1e-9) * self.length:
             raise ModelError(
-                "the bearings leave the shaft free to move; give two, or one held against tilting"
-            ) from None
-
-    def moments(self, shape: NDArray[np.float64]) -> NDArray[np.float64]:
-        """Bending moment at each node from the piece to its left (the first from its right)."""
-        w, slope = shape[0::2], shape[1::2]
-        chord = (w[1:] - w[:-1]) / self.lengths
-        factor = 2.0 * self.rigidity / self.lengths
-        right = factor * (slope[:-1] + 2.0 * slope[1:] - 3.0 * chord)
-        left = factor[0] * (3.0 * chord[0] - 2.0 * slope[0] - slope[1])
-        return np.concatenate([[left], right])
-
-    def _assembled(self) -> NDArray[np.float64]:
-        band = np.zeros((4, self.size))
-        for number, (length, rigidity) in enumerate(zip(self.lengths, self.rigidity, strict=True)):
-            a, b, c = 12.0 / length**3, 6.0 / length**2, 2.0 / length
-            piece = rigidity * np.array(
-                [[a, b, -a, b], [b, 2 * c, -b, c], [-a, -b, a, -b], [b, c, -b, 2 * c]]
+                f"the point at {point:g} m is off the shaft, which is {self.length:g} m long"
             )
-            for row in range(4):
-                for column in range(row + 1):
-                    band[row - column, 2 * number + column] += piece[row, column]
-        return band
+        return min(max(point, 0.0), self.length)
+
+    def free_shape(self, source: _Source, x: float, slope: bool) -> float:
+        """Deflection or slope at x from a source's moment alone, zero left of the source."""
+        s = source.position
+        if x <= s:
+            return 0.0
+        flat, first, second = (self._power(n, x) - self._power(n, s) for n in range(3))
+        if source.of_moment:
+            return -flat if slope else -(x * flat - first)
+        return first - s * flat if slope else (x + s) * first - second - x * s * flat
+
+    def loaded(self, position: float, of_moment: bool) -> _Loaded:
+        """Solve for the bearings' forces and the rigid motion under a unit force or moment."""
+        load = _Source(self.checked(position), of_moment)
+        right = [-self.free_shape(load, one.position, one.of_moment) for one in self.sources]
+        right += self._balance(load, sign=-1.0)
+        row, column = self._scales()
+        scaled = np.linalg.solve(self.matrix, np.array(right) * row)
+        return _Loaded(self, load, scaled * column)
+
+    def _power(self, n: int, x: float) -> float:
+        """∫₀ˣ tⁿ/EI dt."""
+        upto = np.clip(x, self.left, self.right) ** (n + 1) - self.left ** (n + 1)
+        return float(np.sum(upto / ((n + 1) * self.rigidity)))
+
+    def _balance(self, source: _Source, sign: float = 1.0) -> list[float]:
+        force = 0.0 if source.of_moment else 1.0
+        lever = -1.0 if source.of_moment else self.length - source.position
+        return [sign * force, sign * lever]
+
+    def _system(self) -> NDArray[np.float64]:
+        """Compatibility at each bearing and balance of the whole, over forces and rigid motion."""
+        count = len(self.sources)
+        matrix = np.zeros((count + 2, count + 2))
+        for i, here in enumerate(self.sources):
+            for j, source in enumerate(self.sources):
+                matrix[i, j] = self.free_shape(source, here.position, here.of_moment)
+            matrix[i, i] += self.yields[i]
+            matrix[i, count:] = [0.0, 1.0] if here.of_moment else [1.0, here.position]
+            matrix[count:, i] = self._balance(here)
+        row, column = self._scales()
+        return row[:, None] * matrix * column[None, :]
+
+    def _scales(self) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """Units of length and of EI, so that the system holds numbers of like size."""
+        length, rigidity = self.length, float(self.rigidity.min())
+        kinds = np.array([source.of_moment for source in self.sources])
+        # Per unit force: deflections L³/EI, slopes L²/EI, moments L.
+        deflection = length**3 / rigidity
+        shapes = np.where(kinds, deflection / length, deflection)
+        forces = np.where(kinds, length, 1.0)
+        row = 1.0 / np.append(shapes, [1.0, length])
+        return row, np.append(forces, [deflection, deflection / length])
+
+
+@dataclass(frozen=True)
+class _Loaded:
+    """The shaft under one unit load, with the bearings' forces and the rigid motion found."""
+
+    beam: _Beam
+    load: _Source
+    found: NDArray[np.float64]
+
+    def shape(self, x: float, slope: bool) -> float:
+        """Deflection or slope at a point."""
+        rigid = self.found[-1] if slope else self.found[-2] + self.found[-1] * x
+        own = self.beam.free_shape(self.load, x, slope)
+        forces = zip(self.beam.sources, self.found, strict=False)
+        return float(
+            own + rigid + sum(f * self.beam.free_shape(one, x, slope) for one, f in forces)
+        )
+
+    def moment(self, x: float) -> float:
+        """Bending moment at a point."""
+        forces = zip(self.beam.sources, self.found, strict=False)
+        return float(self.load.moment(x) + sum(f * one.moment(x) for one, f in forces))

@@ -209,6 +209,9 @@ def small_damping_amplification(damping_ratio: float) -> float:
     return 1.0 / (2.0 * ratio)
 
 
+NO_DAMPING = 1e-12
+"""Damping ratio below which a rotor counts as undamped: its peak is lost in rounding."""
+
 _UNDAMPED = "without damping the amplitude grows without bound"
 
 
@@ -219,7 +222,7 @@ def _closed_form(rotor: OneMassRotor) -> Peak:
         return Peak(None, None, None, exists=False, reason=_no_peak(rotor))
     ratio = 1.0 / math.sqrt(1.0 - 2.0 * zeta**2)
     speed = ratio * rotor.natural_frequency
-    if zeta == 0.0:
+    if zeta < NO_DAMPING:
         return Peak(speed, math.inf, math.pi / 2.0, exists=True, reason=_UNDAMPED)
     amplitude = rotor.eccentricity / (2.0 * zeta * math.sqrt(1.0 - zeta**2))
     return Peak(speed, amplitude, math.atan2(2.0 * zeta * ratio, 1.0 - ratio**2), exists=True)
@@ -302,12 +305,12 @@ def _half_power(rotor: OneMassRotor, guess: float, peak: Peak) -> float:
 
 def undamped_criticals(rotor: OneMassRotor) -> list[float]:
     """Speeds where the response has no bound [rad/s]; empty as soon as anything damps."""
-    if rotor.damping_ratio > 0.0:
+    if rotor.damping_ratio >= NO_DAMPING:
         return []
     if rotor.support is None:
         return [rotor.natural_frequency]
     own = rotor.support
-    if own.damping > 0.0:
+    if own.damping * rotor.natural_frequency >= NO_DAMPING * rotor.stiffness:
         return []
     kappa, mu = own.stiffness / rotor.stiffness, own.mass / rotor.mass
     # (1 − x)(κ − μx) − x = 0 in x = r²

@@ -20,6 +20,7 @@ from reportgen.rotor.onemass_model import OneMassRotor
 from reportgen.rotor.onemass_peak import resonance_peak, resonance_peaks
 from reportgen.rotor.passage_exact import LEAST_ACCELERATION
 from reportgen.rotor.passage_kernel import Complexes, Floats, is_past, swept
+from reportgen.rotor.passage_modes import modes_of
 from reportgen.rotor.passage_peak import PassagePeak, passage_peak
 from reportgen.rotor.passage_programme import ConstantAcceleration
 
@@ -145,10 +146,6 @@ def least_acceleration(
             f"the critical speeds {', '.join(f'{speed:.6g}' for speed in criticals)} rad/s do not "
             f"all lie between {low:g} and {high:g} rad/s: this is no passage"
         )
-    steady = resonance_peak(rotor).amplitude
-    if steady is not None and steady <= limit:
-        reason = "the limit is not below the steady peak: any acceleration meets it"
-        return LeastAcceleration(0.0, None, exists=True, reason=reason)
     sign = math.copysign(1.0, end_speed - start_speed)
     square = rotor.natural_frequency**2
     top = 0.05 * square if fastest is None else check.positive("fastest", fastest, "rad/s²")
@@ -165,14 +162,27 @@ def least_acceleration(
     if at(log).amplitude > limit:
         reason = f"even {sign * top:g} rad/s², the fastest looked at, exceeds the limit"
         return LeastAcceleration(None, None, exists=False, reason=reason)
-    slowest = math.log(LEAST_ACCELERATION * square) + step
+    slowest = math.log(_slowest(rotor, limit) * square)
     while at(log - step).amplitude <= limit:
         log -= step
         if log - step < slowest:
-            reason = "the slowest acceleration the method covers still meets the limit"
-            return LeastAcceleration(sign * math.exp(log), at(log), exists=True, reason=reason)
+            reason = "every slower acceleration meets the limit too, down to the steady whirl"
+            return LeastAcceleration(0.0, None, exists=True, reason=reason)
     root = float(brentq(lambda x: at(x).amplitude - limit, log - step, log, xtol=1e-7))
     return LeastAcceleration(sign * math.exp(root), at(root), exists=True)
+
+
+def _slowest(rotor: OneMassRotor, limit: float) -> float:
+    """Least θ̈/ωₙ² to look at.
+
+    A slow passage may exceed the steady peak by a little, so a limit above the steady peak is
+    looked at too, until the speed stays still for long against the decay of the slowest mode.
+    """
+    steady = resonance_peak(rotor).amplitude
+    if steady is None or steady > limit:
+        return 10.0 * LEAST_ACCELERATION
+    decay = float(np.abs(modes_of(rotor).rate.real).min())
+    return max(10.0 * LEAST_ACCELERATION, min(1e-3 * decay**2, 1e-2))
 
 
 def _line(values: ArrayLike, name: str) -> Floats:

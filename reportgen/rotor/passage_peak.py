@@ -122,12 +122,13 @@ def _listed(peaks: Sequence[Peak]) -> str:
 
 def _verdict(programme: Programme, time: float) -> tuple[bool, str]:
     first, last = programme.start_time, programme.end_time
-    if time >= last - 1e-9 * (last - first):
+    slack = 1e-6 * (last - first)
+    if time >= last - slack:
         return False, (
             "the highest amplitude is that at the end of the programme, where it may still rise; "
             "extend the programme or hold its end speed longer"
         )
-    if time <= first:
+    if time <= first + slack:
         return True, "the highest amplitude is that at the start; the passage stays below it"
     return True, ""
 
