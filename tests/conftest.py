@@ -109,8 +109,9 @@ class Workshop:
         """Sign a package as a person, hours after the usual time."""
         from reportgen.package.sign import sign_package
 
-        results = json.loads((path / "data" / "results.json").read_bytes())
-        how.setdefault("accepted_holds", [hold["id"] for hold in results["holds"]])
+        if "accepted_holds" not in how:
+            results = json.loads((path / "data" / "results.json").read_bytes())
+            how["accepted_holds"] = [hold["id"] for hold in results["holds"]]
         how.setdefault("time", SIGNED + timedelta(hours=hours))
         identity = identity or self.identity(person)
         return sign_package(path, role, identity, f"{role} with care", person, **how)  # type: ignore[arg-type]
@@ -195,9 +196,13 @@ def run_demo(tmp_path_factory: pytest.TempPathFactory) -> Callable[[str], Demo]:
                     text=True,
                     check=False,
                 )
-                record.write_text(json.dumps([str(case), done.returncode, done.stdout, done.stderr]))
+                record.write_text(
+                    json.dumps([str(case), done.returncode, done.stdout, done.stderr])
+                )
         case_path, status, out, err = json.loads(record.read_text())
-        packages = sorted(path for path in place.iterdir() if path.is_dir()) if place.is_dir() else []
+        packages = (
+            sorted(path for path in place.iterdir() if path.is_dir()) if place.is_dir() else []
+        )
         assert len(packages) == 1, f"{name}: status {status}, {err}"
         return Demo(Path(case_path), status, out, err, packages[0])
 
@@ -210,3 +215,129 @@ def one_at_a_time(lock: Path) -> Iterator[None]:
     with lock.open("w") as file:
         fcntl.flock(file, fcntl.LOCK_EX)
         yield
+
+
+@dataclass
+class Authority:
+    """A throw-away root that issues certificates, for signers and for a time stamper."""
+
+    key: Any
+    certificate: Any
+
+    @classmethod
+    def new(cls, name: str) -> Authority:
+        from cryptography.hazmat.primitives.asymmetric import ec
+
+        key = ec.generate_private_key(ec.SECP256R1())
+        return cls(key, _certificate(name, key.public_key(), name, key, root=True))
+
+    def issue(
+        self,
+        name: str,
+        *,
+        rsa: bool = False,
+        first: datetime = SIGNED - timedelta(days=10),
+        last: datetime = SIGNED + timedelta(days=365),
+        **kind: Any,
+    ) -> Any:
+        """Give an identity with a certificate of this authority and its root beside it."""
+        from cryptography.hazmat.primitives.asymmetric import ec
+        from cryptography.hazmat.primitives.asymmetric import rsa as rsa_keys
+        from cryptography.hazmat.primitives.serialization import NoEncryption, pkcs12
+        from pyhanko.sign.signers import SimpleSigner
+
+        from reportgen.package.identity import Identity, holder
+
+        key: Any = (
+            rsa_keys.generate_private_key(65537, 2048)
+            if rsa
+            else ec.generate_private_key(ec.SECP256R1())
+        )
+        made = _certificate(
+            name, key.public_key(), holder(self.certificate), self.key, first, last, **kind
+        )
+        content = pkcs12.serialize_key_and_certificates(
+            b"", key, made, [self.certificate], NoEncryption()
+        )
+        return Identity(SimpleSigner.load_pkcs12_data(content, []), made, "test")
+
+
+def _certificate(
+    name: str,
+    public_key: Any,
+    issuer: str,
+    key: Any,
+    first: datetime = SIGNED - timedelta(days=3650),
+    last: datetime = SIGNED + timedelta(days=36500),
+    *,
+    root: bool = False,
+    stamping: bool = False,
+    signing: bool = True,
+) -> Any:
+    from cryptography import x509
+    from cryptography.hazmat.primitives import hashes
+    from cryptography.x509.oid import ExtendedKeyUsageOID, NameOID
+
+    def named(text: str) -> x509.Name:
+        return x509.Name([x509.NameAttribute(NameOID.COMMON_NAME, text)])
+
+    off = dict.fromkeys(
+        ("key_encipherment", "data_encipherment", "key_agreement", "encipher_only"), False
+    )
+    usage = x509.KeyUsage(
+        digital_signature=signing and not root,
+        content_commitment=signing and not root,
+        key_cert_sign=root,
+        crl_sign=root,
+        decipher_only=False,
+        **off,
+    )
+    builder = (
+        x509.CertificateBuilder()
+        .subject_name(named(name))
+        .issuer_name(named(issuer))
+        .public_key(public_key)
+        .serial_number(x509.random_serial_number())
+        .not_valid_before(first)
+        .not_valid_after(last)
+        .add_extension(x509.BasicConstraints(ca=root, path_length=None), critical=True)
+        .add_extension(usage, critical=True)
+        .add_extension(x509.SubjectKeyIdentifier.from_public_key(public_key), critical=False)
+    )
+    if stamping:
+        purpose = x509.ExtendedKeyUsage([ExtendedKeyUsageOID.TIME_STAMPING])
+        builder = builder.add_extension(purpose, critical=True)
+    return builder.sign(key, hashes.SHA256())
+
+
+@pytest.fixture(scope="session")
+def authority() -> Authority:
+    """Give a throw-away certificate authority."""
+    return Authority.new("Test root")
+
+
+@dataclass
+class Stamper:
+    """A local time-stamping authority under a root of its own."""
+
+    root: Authority
+    identity: Any
+
+    @property
+    def certificate(self) -> Any:
+        """The root, to be given as a trust anchor."""
+        return self.root.certificate
+
+    def at(self, time: datetime) -> Any:
+        """Give a time stamper whose clock stands at ``time``."""
+        from pyhanko.sign.timestamps.dummy_client import DummyTimeStamper
+
+        signer = self.identity.signer
+        return DummyTimeStamper(signer.signing_cert, signer.signing_key, fixed_dt=time)
+
+
+@pytest.fixture(scope="session")
+def stamper() -> Stamper:
+    """Give a local time stamper."""
+    root = Authority.new("Test time-stamping root")
+    return Stamper(root, root.issue("Test time stamper", rsa=True, stamping=True))

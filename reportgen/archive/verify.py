@@ -19,7 +19,16 @@ from reportgen.package.bag import TAG_MANIFEST
 from reportgen.package.contents import Check, Contents, read_folder
 from reportgen.package.intact import bag_checks, read_results
 
-__all__ = ["Check", "Signer", "Verification", "load_anchors", "read_package", "verify_package"]
+__all__ = [
+    "Check",
+    "Contents",
+    "Signer",
+    "Verification",
+    "judge_package",
+    "load_anchors",
+    "read_package",
+    "verify_package",
+]
 
 
 def verify_package(
@@ -45,9 +54,18 @@ def verify_package(
     PackageError
         There is nothing to verify: no such folder or file, or it cannot be read.
     """
-    contents = read_package(path)
+    return judge_package(read_package(path), trust, now=now)
+
+
+def judge_package(
+    contents: Contents,
+    trust: Sequence[x509.Certificate] | None = None,
+    *,
+    now: datetime | None = None,
+) -> Verification:
+    """Judge a package that was read already; see :func:`verify_package`."""
     if any(fault.kind == "container" for fault in contents.faults) and not contents.files:
-        return verdict(path.name, contents.faults, [])
+        return verdict(contents.name, contents.faults, [])
     checks = bag_checks(contents)
     try:
         results = read_results(contents.files)

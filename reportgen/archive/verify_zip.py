@@ -35,11 +35,16 @@ def read_zip(path: Path) -> Contents:
         content = path.read_bytes()
     except OSError as error:
         raise PackageError(f"{path}: cannot be read: {error.strerror}") from error
+    return read_zip_bytes(path.stem, content)
+
+
+def read_zip_bytes(stem: str, content: bytes) -> Contents:
+    """Read the package in a zip's bytes; ``stem`` is the zip's name without ``.zip``."""
     try:
-        return _read(path.stem, content)
+        return _read(stem, content)
     except (zipfile.BadZipFile, NotImplementedError, ValueError, EOFError, OSError) as error:
-        fault = Check("container", path.name, False, f"is no intact zip: {error}")
-        return Contents(path.stem, {}, (fault,))
+        fault = Check("container", f"{stem}.zip", False, f"is no intact zip: {error}")
+        return Contents(stem, {}, (fault,))
 
 
 def _read(stem: str, content: bytes) -> Contents:

@@ -88,7 +88,7 @@ async def _sign_detached(
     if utc.year <= _LAST_UTC_TIME:
         stated = cms.Time({"utc_time": core.UTCTime(utc)})
     else:
-        stated = cms.Time({"general_time": core.GeneralizedTime(utc)})
+        stated = cms.Time({"generalized_time": core.GeneralizedTime(utc)})
     text = x509.DirectoryString(name="utf8_string", value=core.UTF8String(description))
     attributes = cms.CMSAttributes(
         [

@@ -15,7 +15,7 @@ import platform
 import shutil
 import sys
 from collections.abc import Iterator, Mapping
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from pathlib import Path
 
 from reportgen.errors import PackageError
@@ -90,7 +90,8 @@ def write_file(path: Path, content: bytes) -> None:
             temporary.replace(path)
             flush_folder(path.parent)
     finally:
-        temporary.unlink(missing_ok=True)
+        with suppress(OSError):
+            temporary.unlink()
 
 
 def flush_folder(folder: Path) -> None:

@@ -14,6 +14,7 @@ import stat
 import sys
 import unicodedata
 from collections.abc import Callable
+from contextlib import suppress
 from dataclasses import dataclass
 from datetime import UTC, datetime, timedelta
 from pathlib import Path
@@ -416,7 +417,8 @@ def _store(path: Path, content: bytes) -> bool:
     except (OSError, PackageError) as error:
         raise SignatureError(f"{path}: the new identity cannot be stored: {error}") from error
     finally:
-        temporary.unlink(missing_ok=True)
+        with suppress(OSError):
+            temporary.unlink()
     return True
 
 

@@ -10,6 +10,7 @@ from reportgen.errors import PackageError
 from reportgen.package.bag import PAYLOAD, SIGNATURES, bag_files
 from reportgen.package.changes import payload_changes
 from reportgen.package.disk import (
+    clear_leftovers,
     explained,
     move_into_place,
     staging,
@@ -69,6 +70,7 @@ def write_package(
     target = Path(out_dir) / name
     with explained(target):
         if target.exists() and _stands(target, payload, replace_draft):
+            clear_leftovers(target.parent, name)
             tell(f"{name}: the same package is there already; kept as it is")
             return target
     with staging(Path(out_dir), name) as folder:
