@@ -277,7 +277,7 @@ class DaskPool(Pool):
     def ended(self, seconds: float | None) -> list[tuple[int, Outcome]]:
         """Wait for cases to end; returns now and then, since workers may have come."""
         timeout = _POLL_SECONDS if seconds is None else seconds
-        with contextlib.suppress(TimeoutError):
+        with contextlib.suppress(TimeoutError), self._client.as_current():
             self._distributed.wait(
                 list(self._running), timeout=timeout, return_when="FIRST_COMPLETED"
             )

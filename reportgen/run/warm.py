@@ -28,6 +28,7 @@ from reportgen.run.normalise import SCRATCH_PREFIX
 _START_SECONDS = 60.0  # the imports of a cold disk
 _ANSWER_SECONDS = 20.0  # a fork, on a busy computer
 _LAUNCHER = ["-m", "ipykernel_launcher"]
+_PARENT_MODULE = "reportgen.run.warm_parent"
 
 
 class WarmUnavailableError(Exception):
@@ -142,7 +143,7 @@ class WarmParent:
         self.address = str(root / "warm")
         # A session of its own: an interrupt at the terminal is for the owner to handle.
         self._process = subprocess.Popen(
-            [sys.executable, "-m", "reportgen.run.warm_parent", self.address],
+            [sys.executable, "-m", _PARENT_MODULE, self.address],
             stdin=subprocess.PIPE,
             stdout=subprocess.PIPE,
             env=kernel_environment(root),
