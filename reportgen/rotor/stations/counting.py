@@ -29,10 +29,10 @@ def _phase(model: Model, points: Complex, speed: float) -> Complex:
 
 def _edge(start: complex, end: complex, known: Complex) -> Complex:
     """Points of one edge, without its end: geometric from both ends and close to known roots."""
-    part = np.concatenate([np.geomspace(1e-4, 0.5, 24), np.linspace(0, 1, 33)[:-1]])
-    part = np.concatenate([part, 1 - np.geomspace(1e-4, 0.5, 24)])
+    part = np.concatenate([np.geomspace(1e-4, 0.5, 12), np.linspace(0, 1, 13)[:-1]])
+    part = np.concatenate([part, 1 - np.geomspace(1e-4, 0.5, 12)])
     along = (known - start) / (end - start)
-    for reach in (-4, -1.5, -0.5, 0, 0.5, 1.5, 4):
+    for reach in (-3, -1, 0, 1, 3):
         part = np.concatenate([part, along.real + reach * np.abs(along.imag)])
     part = np.unique(part[(part >= 0) & (part < 1)])
     return np.asarray(start + (end - start) * part)

@@ -15,8 +15,8 @@ from reportgen.rotor.stations.model import Model
 from reportgen.rotor.stations.reduction import shaft_subspace, starting_pairs
 from reportgen.rotor.stations.shaft import Complex
 
-# Newton's correction at which a root counts as found: its square is below rounding.
-_SETTLED = 1e-7
+# Newton's correction at which a root counts as found: the next would be some 1e-10.
+_SETTLED = 1e-6
 _MOST_STEPS = 12
 
 # Two equal real roots leave the reduced problem as a pair this far off the real axis.
@@ -38,7 +38,7 @@ class Eigenpairs:
     """P pairs: λ [1/s], its speed Ω [rad/s] (P,), and vectors.
 
     ``shaft`` (P, n, 4) in (f, f', b, b') with largest deflection 1, ``pedestals`` (P, p, 2).
-    ``correction``: relative size of the last step, whose square bounds what is left.
+    ``correction``: relative size of the last step; what is left is smaller by about 1e-4.
     """
 
     exponents: Complex
