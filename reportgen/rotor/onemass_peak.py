@@ -297,7 +297,7 @@ def _half_power(rotor: OneMassRotor, guess: float, peak: Peak) -> float:
     def excess(at: float) -> float:
         return float(np.abs(response(rotor, at))) / amplitude - math.sqrt(0.5)
 
-    ends = sorted((guess - half_way, guess + half_way))
+    ends = sorted((max(guess - half_way, 0.0), max(guess + half_way, 0.0)))
     if excess(ends[0]) * excess(ends[1]) >= 0.0:
         return guess
     return _root(excess, *ends)

@@ -216,13 +216,13 @@ def _coarse_grid(track: Track, piece: Segment) -> Floats:
         longest = piece.duration
         fades = [1.0 / max(-float(s.real), 1e-9) for s in track.modes.rate]
         fade = min(max(fades) / track.modes.frequency, longest)
-        early = np.geomspace(1e-3 * fade, longest, 120) if fade > 0.0 else np.empty(0)
+        early = longest * np.geomspace(max(1e-3 * fade / longest, 1e-12), 1.0, 120)
         return np.unique(np.concatenate([[0.0], early, np.linspace(0.0, longest, 60)]))
     scale = abs(piece.acceleration) / track.modes.frequency**2
     # The free motion fades in time whatever the speed does, so the start is dense as well.
     parts = [
         np.linspace(0.0, piece.duration, 200),
-        np.geomspace(1e-6 * piece.duration, piece.duration, 100),
+        piece.duration * np.geomspace(1e-6, 1.0, 100),
     ]
     for s in track.modes.rate:
         width = math.sqrt(scale) + abs(float(s.real))
