@@ -30,10 +30,11 @@ from reportgen.run.template import KERNEL
 
 _SOCKET_PATH_LIMIT = 103  # macOS holds 104 bytes with the closing null, Linux 108
 
-KERNEL_ARGUMENTS = ["--HistoryManager.enabled=False", "--matplotlib=inline"]
+KERNEL_ARGUMENTS = ["--HistoryManager.enabled=False", "--matplotlib=inline", "--log-level=50"]
 """No history, since nbclient keeps it off the disk for kernels named ``python*`` only; and the
 figure backend by name: a kernel whose matplotlib was imported before it started would never
-choose it, and figures would lose their pictures without a word.
+choose it, and figures would lose their pictures without a word. No log: a kernel ended at
+once complains on the user's terminal of the interrupt that its manager sends first.
 """
 
 PROVISIONER = "reportgen-warm"
