@@ -21,7 +21,7 @@ from pyhanko.sign.validation.settings import KeyUsageConstraints
 from pyhanko.sign.validation.status import TimestampSignatureStatus
 from pyhanko_certvalidator import ValidationContext
 
-from reportgen.package.cms import DIGEST, SIGNING_DESCRIPTION, run_async
+from reportgen.package.cms import DIGEST, SIGNING_DESCRIPTION, canonical, run_async
 from reportgen.package.identity import colons
 
 KEY_USAGE = KeyUsageConstraints(
@@ -88,7 +88,9 @@ def read_detached(
     attributes = signer["signed_attrs"]
     time = _attribute(attributes, "signing_time")
     roots = [asn1_x509.Certificate.load(anchor.public_bytes(Encoding.DER)) for anchor in anchors]
-    status = run_async(_status(content, signed_data, roots, time))
+    # Without anchors the signer's path is not judged: the certificate stands for itself.
+    signers = roots or [extract_certificate_info(signed_data).signer_cert]
+    status = run_async(_status(content, signed_data, signers, roots, time))
     if not status.intact:
         raise ValueError("the signature is not over these bytes: the tag manifest was changed")
     if not status.valid:
@@ -99,7 +101,7 @@ def read_detached(
     stamp_anchored = stamp is not None and bool(stamp.trusted)
     if stamp is not None and stamp_anchored:
         # A certificate may have ended since; what counts is that it held when stamped.
-        status = run_async(_status(content, signed_data, roots, stamp.timestamp))
+        status = run_async(_status(content, signed_data, signers, roots, stamp.timestamp))
     certificate = status.signing_cert
     others = [choice.chosen.sha256 for choice in signed_data["certificates"]]
     chain = sorted({colons(digest) for digest in others} - {colons(certificate.sha256)})
@@ -116,15 +118,17 @@ def read_detached(
     )
 
 
-async def _status(content: bytes, signed_data: Any, roots: list[Any], moment: datetime) -> Any:
-    def context() -> ValidationContext:
+async def _status(
+    content: bytes, signed_data: Any, signers: list[Any], stampers: list[Any], moment: datetime
+) -> Any:
+    def context(roots: list[Any]) -> ValidationContext:
         return ValidationContext(trust_roots=roots, moment=moment, allow_fetching=False)
 
     return await async_validate_detached_cms(
         content,
         signed_data,
-        signer_validation_context=context(),
-        ts_validation_context=context(),
+        signer_validation_context=context(signers),
+        ts_validation_context=context(stampers),
         key_usage_settings=KEY_USAGE,
     )
 
@@ -147,39 +151,13 @@ def _strict(signature: bytes) -> Any:
     unsigned = signer["unsigned_attrs"]
     kinds = [] if unsigned is core.VOID else [attribute["type"].native for attribute in unsigned]
     _require(kinds in ([], [_TIME_STAMP]), "holds attributes that nobody signed")
-    _require(_rebuilt(data, signer) == signature, "is not written as signing writes it")
+    _require(canonical(info).dump() == signature, "is not written as signing writes it")
+    if kinds:
+        tokens = unsigned[0]["values"]
+        _require(len(tokens) == 1, "holds more than one time stamp")
+        same = canonical(tokens[0]).dump() == tokens[0].dump()
+        _require(same, "holds a time stamp that is not written as signing writes it")
     return data
-
-
-def _rebuilt(data: Any, signer: Any) -> bytes:
-    """Write the CMS object anew around the parts that are signed or judged elsewhere.
-
-    These are the signed attributes, the signature value, the certificates (the statement
-    names each by digest) and a time stamp; all else follows from them.
-    """
-    certificate = extract_certificate_info(data).signer_cert
-    issuer_and_serial = cms.IssuerAndSerialNumber(
-        {"issuer": certificate.issuer, "serial_number": certificate.serial_number}
-    )
-    rebuilt = {
-        "version": "v1",
-        "sid": cms.SignerIdentifier({"issuer_and_serial_number": issuer_and_serial}),
-        "digest_algorithm": signer["digest_algorithm"],
-        "signature_algorithm": signer["signature_algorithm"],
-        "signed_attrs": signer["signed_attrs"],
-        "signature": signer["signature"].native,
-    }
-    if signer["unsigned_attrs"] is not core.VOID:
-        rebuilt["unsigned_attrs"] = signer["unsigned_attrs"]
-    content = {
-        "version": "v1",
-        "digest_algorithms": cms.DigestAlgorithms([signer["digest_algorithm"]]),
-        "encap_content_info": {"content_type": "data"},
-        "certificates": data["certificates"],
-        "signer_infos": [rebuilt],
-    }
-    info = cms.ContentInfo({"content_type": "signed_data", "content": cms.SignedData(content)})
-    return bytes(info.dump())
 
 
 def _require(condition: bool, otherwise: str) -> None:

@@ -74,10 +74,14 @@ def verify_sign_offs(
     published = contents.files.get(PAYLOAD + PDF_FILE)
     if published is not None:
         found.checks += pdf_checks(published, copies, anchors or ())
-    if not found.signers and not found.checks and results["document"]["status"] != "draft":
-        status = results["document"]["status"]
-        detail = f"no signature, though the document's status is {status}"
-        found.checks.append(Check("unsigned", "signatures", False, detail))
+    status = results["document"]["status"]
+    if not any(path.startswith(SIGNATURES) for path in contents.files):
+        if status != "draft":
+            detail = f"no signature, though the document's status is {status}"
+            found.checks.append(Check("unsigned", "signatures", False, detail))
+        elif anchors is not None:
+            detail = "no signature, so no signer under the trust anchors given"
+            found.checks.append(Check("unsigned", "signatures", False, detail))
     return found
 
 
