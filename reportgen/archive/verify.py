@@ -14,7 +14,7 @@ from cryptography import x509
 from reportgen.archive.verify_result import Signer, Verification, verdict
 from reportgen.archive.verify_signatures import verify_sign_offs
 from reportgen.archive.verify_zip import read_zip
-from reportgen.errors import PackageError, SignatureError
+from reportgen.errors import PackageError, SignatureError, VerificationError
 from reportgen.package.bag import TAG_MANIFEST
 from reportgen.package.contents import Check, Contents, read_folder
 from reportgen.package.intact import bag_checks, read_results
@@ -27,6 +27,7 @@ __all__ = [
     "judge_package",
     "load_anchors",
     "read_package",
+    "require_sound",
     "verify_package",
 ]
 
@@ -75,6 +76,22 @@ def judge_package(
         return verdict(contents.name, checks, [])
     found = verify_sign_offs(contents, results, trust, now or datetime.now(UTC))
     return verdict(contents.name, [*checks, *found.checks], found.signers)
+
+
+def require_sound(path: Path) -> Verification:
+    """Verify a package that is to be signed; nobody should sign on top of a forged sign-off.
+
+    Raises
+    ------
+    VerificationError
+        Something in the package or in an earlier sign-off is not as it must be. That a
+        package has no signature yet is no fault here.
+    """
+    found = verify_package(path)
+    if faults := [fault for fault in found.faults if fault.kind != "unsigned"]:
+        lines = "\n  ".join(f"{fault.subject}: {fault.detail}" for fault in faults)
+        raise VerificationError(f"{path.name} must not be signed as it is:\n  {lines}")
+    return found
 
 
 def read_package(path: Path) -> Contents:

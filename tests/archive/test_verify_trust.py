@@ -8,8 +8,8 @@ import sys
 
 import pytest
 
-from reportgen.archive.verify import load_anchors
-from reportgen.errors import PackageError, SignatureError
+from reportgen.archive.verify import load_anchors, require_sound
+from reportgen.errors import PackageError, SignatureError, VerificationError
 
 
 def test_self_issued_identities_are_told_with_their_fingerprints(approved_once, judge, workshop):
@@ -110,6 +110,18 @@ def test_the_verdict_can_be_read_by_a_machine(approved_once, judge):
     assert given["kind"] == "self-issued"
     assert given["signers"][1]["time"] == "2026-03-02T11:00:00Z"
     assert {"kind", "subject", "ok", "detail"} == set(given["checks"][0])
+
+
+def test_a_package_to_be_signed_may_be_unsigned_but_not_forged(workshop, tmp_path):
+    path = workshop.package(tmp_path)
+    assert require_sound(path).kind == "unsigned"
+    folder = workshop.sign(path, "prepared", "Ann Ash")
+    assert require_sound(path).ok
+    statement = folder / "statement.json"
+    statement.write_bytes(statement.read_bytes().replace(b"with care", b"carelessly"))
+    with pytest.raises(VerificationError, match="is not the statement that was signed") as caught:
+        require_sound(path)
+    assert caught.value.exit_status == 4
 
 
 WATCH = """

@@ -12,6 +12,7 @@ from pathlib import Path
 import pytest
 
 from reportgen.errors import PackageError
+from reportgen.package import disk
 from reportgen.package.changes import field_changes, payload_changes
 from reportgen.package.write import read_payload, write_package
 
@@ -232,13 +233,12 @@ def test_two_runs_into_one_folder_leave_one_whole_package(tmp_path, same):
 
 
 def test_what_a_killed_run_left_is_cleared_and_what_a_living_one_writes_is_not(workshop, tmp_path):
-    from reportgen.package.disk import _here
-
     dead = subprocess.Popen([sys.executable, "-c", ""])
     dead.wait()
     living = subprocess.Popen([sys.executable, "-c", "input()"], stdin=subprocess.PIPE)
     folders = [
-        tmp_path / f".CAL-0417_B.{_here()}-{pid}-00000000.part" for pid in (dead.pid, living.pid)
+        tmp_path / f".CAL-0417_B.{disk._here()}-{pid}-00000000.part"
+        for pid in (dead.pid, living.pid)
     ]
     for folder in folders:
         folder.mkdir()
@@ -264,3 +264,33 @@ def test_many_changes_are_cut_with_their_number():
     new = {"inputs.json": json.dumps({str(i): 1 for i in range(40)}).encode()}
     lines = payload_changes(old, new)
     assert lines[-2:] == ["inputs.json: and 28 more fields", "inputs.json: changed"]
+
+
+class TestWhereNamesCannotBeExchanged:
+    """Not every system and drive can exchange two names in one step."""
+
+    @pytest.fixture(autouse=True)
+    def _no_exchange(self, monkeypatch):
+        monkeypatch.setattr(disk, "_exchange", lambda *_: False)
+
+    def test_a_draft_is_replaced(self, workshop, tmp_path, judge):
+        path = workshop.package(tmp_path, status="draft")
+        changed = workshop.payload(status="draft", title="Another title")
+        write_package(tmp_path, path.name, changed, INFO, replace_draft=True)
+        assert read_payload(path) == changed
+        assert judge(path).ok
+        assert leftovers(tmp_path) == []
+
+    def test_the_old_draft_comes_back_if_the_new_one_cannot_be_moved(self, workshop, tmp_path):
+        path = workshop.package(tmp_path, status="draft")
+        before = read_payload(path)
+        with pytest.raises(OSError, match="No such file"):
+            disk.swap_into_place(tmp_path / "not there", path)
+        assert read_payload(path) == before
+
+    def test_a_kill_between_the_two_renames_is_put_right(self, workshop, tmp_path):
+        path = workshop.package(tmp_path, status="draft")
+        before = read_payload(path)
+        path.rename(tmp_path / f".{path.name}.old")
+        disk.clear_leftovers(tmp_path, path.name)
+        assert read_payload(path) == before
