@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import datetime
 from typing import Any, Literal
 
@@ -102,7 +102,20 @@ class Verification:
 
 
 def verdict(name: str, checks: Sequence[Check], signers: Sequence[Signer]) -> Verification:
-    """Weigh the checks into one verdict."""
+    """Weigh the checks into one verdict, in words that are safe to print.
+
+    Names and statements come from whoever made the package: what could steer a terminal or
+    hide text is written as an escape.
+    """
+    name = printable(name)
+    checks = [
+        replace(check, subject=printable(check.subject), detail=printable(check.detail))
+        for check in checks
+    ]
+    signers = [
+        replace(signer, name=printable(signer.name), words=printable(signer.words))
+        for signer in signers
+    ]
     faults = [check for check in checks if not check.ok]
     kind = _kind(faults, signers)
     return Verification(
@@ -111,6 +124,13 @@ def verdict(name: str, checks: Sequence[Check], signers: Sequence[Signer]) -> Ve
         headline=f"{name}: {_headline(kind, faults, signers)}",
         checks=tuple(checks),
         signers=tuple(signers),
+    )
+
+
+def printable(text: str) -> str:
+    """Write control, format and undecodable characters as escapes."""
+    return "".join(
+        char if char.isprintable() else char.encode("unicode_escape").decode() for char in text
     )
 
 

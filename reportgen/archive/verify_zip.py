@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import stat
 import zipfile
+from collections import Counter
 from collections.abc import Iterator
 from io import BytesIO
 from pathlib import Path
@@ -74,7 +75,7 @@ def _faults(entries: list[zipfile.ZipInfo], size: int) -> Iterator[Check]:
     for entry in entries:
         if fault := _entry_fault(entry):
             yield Check("container", entry.filename, False, fault)
-    for name in sorted({name for name in names if names.count(name) > 1}):
+    for name in sorted(name for name, count in Counter(names).items() if count > 1):
         yield Check("container", name, False, "is in the zip more than once")
     for one, other in clashes(sorted(set(names))):
         yield Check("container", other, False, f"collides with {one}")

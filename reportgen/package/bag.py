@@ -34,7 +34,9 @@ def sha512(content: bytes) -> str:
 
 def manifest_bytes(digests: Mapping[str, str]) -> bytes:
     """Give a manifest's bytes: one line a file, in the order of the names."""
-    return "".join(f"{digests[name]}  {name}\n" for name in sorted(digests)).encode()
+    text = "".join(f"{digests[name]}  {name}\n" for name in sorted(digests))
+    # A name on a disk need not be UTF-8; it is faulted elsewhere and must not stop us here.
+    return text.encode(errors="surrogateescape")
 
 
 def bag_files(payload: Mapping[str, bytes], bag_info: Mapping[str, str]) -> dict[str, bytes]:

@@ -77,41 +77,52 @@ def read_folder(path: Path) -> Contents:
     """
     if not path.is_dir():
         raise PackageError(f"{path}: there is no package here")
-    files: dict[str, bytes] = {}
-    faults: list[Check] = []
+    reader = _Reader()
     if path.is_symlink():
-        faults.append(Check("layout", path.name, False, "the package's folder is a link"))
+        reader.fault(path.name, "the package's folder is a link")
     try:
-        _read(path, "", files, faults, depth=0)
+        reader.read(path)
     except OSError as error:
         place = error.filename or path
         raise PackageError(f"{place}: cannot be read: {error.strerror}") from error
-    return Contents(path.absolute().name, files, tuple(faults))
+    return Contents(path.absolute().name, reader.files, tuple(reader.faults))
 
 
-def _read(
-    folder: Path, prefix: str, files: dict[str, bytes], faults: list[Check], depth: int
-) -> None:
-    if depth > _DEEPEST:
-        raise PackageError(f"{folder}: folders are nested deeper than in any package")
-    with os.scandir(folder) as entries:
-        found = sorted(entries, key=lambda entry: entry.name)
-    if not found:
-        faults.append(Check("layout", prefix or folder.name, False, "empty folder"))
-    for entry in found:
-        name = prefix + entry.name
-        if entry.is_symlink():
-            faults.append(Check("layout", name, False, "a link, not a file"))
-        elif entry.is_dir(follow_symlinks=False):
-            _read(folder / entry.name, name + "/", files, faults, depth + 1)
-        elif not entry.is_file(follow_symlinks=False):
-            faults.append(Check("layout", name, False, "neither a file nor a folder"))
-        else:
-            files[name] = _read_file(folder / entry.name)
-            if len(files) > MOST_FILES:
-                raise PackageError(f"{folder}: more than {MOST_FILES} files; this is no package")
-            if sum(map(len, files.values())) > LARGEST_PACKAGE:
-                raise PackageError(f"{folder}: larger than any package")
+class _Reader:
+    def __init__(self) -> None:
+        self.files: dict[str, bytes] = {}
+        self.faults: list[Check] = []
+        self.size = 0
+
+    def fault(self, subject: str, detail: str) -> None:
+        self.faults.append(Check("layout", subject, False, detail))
+
+    def read(self, folder: Path, prefix: str = "", depth: int = 0) -> None:
+        if depth > _DEEPEST:
+            raise PackageError(f"{folder}: folders are nested deeper than in any package")
+        with os.scandir(folder) as entries:
+            found = sorted(entries, key=lambda entry: entry.name)
+        if not found:
+            self.fault(prefix or folder.name, "empty folder")
+        for entry in found:
+            name = prefix + entry.name
+            if entry.is_symlink():
+                self.fault(name, "a link, not a file")
+            elif entry.is_dir(follow_symlinks=False):
+                self.read(folder / entry.name, name + "/", depth + 1)
+            elif not entry.is_file(follow_symlinks=False):
+                self.fault(name, "neither a file nor a folder")
+            else:
+                self.add(name, _read_file(folder / entry.name))
+
+    def add(self, name: str, content: bytes) -> None:
+        self.files[name] = content
+        self.size += len(content)
+        if len(self.files) > MOST_FILES or self.size > LARGEST_PACKAGE:
+            raise PackageError(
+                f"{name}: with it there are more than {MOST_FILES} files, or more than "
+                f"{LARGEST_PACKAGE:,} bytes; this is no package"
+            )
 
 
 def _read_file(path: Path) -> bytes:

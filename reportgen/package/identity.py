@@ -283,16 +283,22 @@ def load_pkcs11(
         ) from error
     secret = pin()
     text = secret.decode() if isinstance(secret, bytes) else secret
+    session = None
     try:
         criteria = TokenCriteria(label=token)
         session = token_api.open_pkcs11_session(
             str(library), token_criteria=criteria, user_pin=text
         )
         signer = token_api.PKCS11Signer(
-            session, cert_label=certificate, key_label=key or certificate
+            session,
+            cert_label=certificate,
+            key_label=key or certificate,
+            use_raw_mechanism=True,  # the digest is made here: not every token makes SHA-512
         )
         found = signer.signing_cert
     except Exception as error:  # the token libraries raise errors of many unrelated kinds
+        if session is not None:
+            session.close()
         # Not chained and not quoted: the cause could hold the PIN.
         raise SignatureError(
             f"the token {token!r} cannot be used ({type(error).__name__}); "

@@ -22,6 +22,7 @@ from reportgen.package.bag import (
 )
 from reportgen.package.contents import Check, Contents
 from reportgen.package.names import clashes, name_fault, package_name
+from reportgen.package.statement import open_holds, second_computations
 
 _TOP = {*TAG_FILES, TAG_MANIFEST}
 
@@ -64,12 +65,16 @@ def read_results(files: Mapping[str, bytes]) -> dict[str, Any]:
             raise PackageError(
                 f"results.json has format {results['format']!r}; this version reads format 1"
             )
+        second_computations(results)
+        open_holds(results)
     except KeyError as error:
         raise PackageError(f"results.json: {error.args[0]} is missing") from error
-    except (ValueError, TypeError, RecursionError) as error:
+    except (ValueError, TypeError, AttributeError, RecursionError) as error:
         raise PackageError(f"results.json cannot be read: {error}") from error
     if not all(isinstance(value, str) for value in known.values()):
         raise PackageError("results.json: number, revision and status must be text")
+    if not isinstance(document, dict):
+        raise PackageError("results.json: document must be an object")
     return dict(results)
 
 

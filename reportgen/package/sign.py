@@ -203,6 +203,12 @@ def _sign(
         raise SignatureError(f"no time stamp was given: {error}") from error
     except SigningError as error:
         raise SignatureError(f"the signature could not be made: {error}") from error
+    except Exception as error:
+        # The package for tokens is optional, so its errors have no name here.
+        if type(error).__module__.startswith("pkcs11"):
+            reason = f"the token refused to sign ({type(error).__name__}); is it still there?"
+            raise SignatureError(reason) from error
+        raise
     return files
 
 

@@ -6,6 +6,7 @@ of a signature too).
 
 from __future__ import annotations
 
+import json
 import os
 from dataclasses import replace
 from datetime import timedelta
@@ -14,9 +15,10 @@ import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
-from reportgen.archive.verify import judge_package, read_package
+from reportgen.archive.verify import Contents, judge_package, read_package
 from reportgen.archive.verify_cms import read_detached
 from reportgen.archive.verify_zip import read_zip_bytes
+from reportgen.package.bag import bag_files
 from reportgen.package.zipped import zip_bytes
 
 MUTATIONS = int(os.environ.get("MUTATIONS", "100"))
@@ -127,6 +129,46 @@ def test_whatever_bytes_come_a_verdict_is_given(whole, now, data):
         for name, content in whole.files.items()
     }
     assert judge_package(replace(whole, files=files), now=now).ok is (files == whole.files)
+
+
+JSON = st.recursive(
+    st.none() | st.booleans() | st.integers(-9, 9) | st.text(max_size=5),
+    lambda inner: (
+        st.lists(inner, max_size=3) | st.dictionaries(st.text(max_size=5), inner, max_size=3)
+    ),
+    max_leaves=6,
+)
+
+
+@given(st.data())
+@SETTINGS
+def test_whatever_the_results_hold_a_verdict_is_given(workshop, now, data):
+    payload = workshop.payload()
+    results = json.loads(payload["results.json"])
+    place = data.draw(
+        st.sampled_from([(), ("document",), ("results", 0), ("results", 0, "second")])
+    )
+    part = results
+    for key in place:
+        part = part[key]
+    part[data.draw(st.sampled_from(sorted(part)))] = data.draw(JSON)
+    if data.draw(st.booleans()):
+        results["holds"] = data.draw(JSON)
+    payload["results.json"] = json.dumps(results).encode()
+    files = bag_files(payload, {})
+    assert judge_package(Contents("CAL-0417_B", files), now=now).kind in ("damaged", "unsigned")
+
+
+@given(JSON, st.data())
+@SETTINGS
+def test_whatever_a_statement_holds_a_verdict_is_given(whole, now, value, data):
+    name = "signatures/checked/statement.json"
+    given_statement = json.loads(whole.files[name])
+    given_statement[data.draw(st.sampled_from(sorted(given_statement)))] = value
+    text = json.dumps(given_statement, ensure_ascii=False, indent=1, sort_keys=True) + "\n"
+    content = text.encode(errors="surrogatepass")
+    found = judge_package(replace(whole, files={**whole.files, name: content}), now=now)
+    assert found.ok is (content == whole.files[name])
 
 
 def accepted_changes(whole, role):

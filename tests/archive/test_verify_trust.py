@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import os
 import subprocess
 import sys
 
@@ -102,6 +103,35 @@ def test_a_file_without_anchors_is_one_clear_error(tmp_path, content):
 def test_there_must_be_something_to_verify(tmp_path, judge):
     with pytest.raises(PackageError, match="no package here"):
         judge(tmp_path / "none")
+
+
+def test_names_that_could_steer_a_terminal_are_told_as_escapes(approved, judge):
+    for name in (b"\x1b[2Jgone", "\u202etxt.exe".encode(), b"\xff\xfe", b"a\nOK: intact"):
+        (approved / "data" / os.fsdecode(name)).write_bytes(b"")
+    found = judge(approved)
+    subjects = {fault.subject for fault in found.faults}
+    assert "data/\\x1b[2Jgone" in subjects
+    assert "data/\\u202etxt.exe" in subjects
+    assert "data/\\udcff\\udcfe" in subjects
+    assert "data/a\\nOK: intact" in subjects
+    assert found.headline.isprintable()
+    json.dumps(found.to_json(), ensure_ascii=False).encode()
+
+
+def test_what_is_larger_or_deeper_than_any_package_is_not_read(tmp_path, judge, monkeypatch):
+    from reportgen.package import contents
+
+    deep = tmp_path / "deep"
+    deep.joinpath(*"abcdefghijklmnopqrst").mkdir(parents=True)
+    with pytest.raises(PackageError, match="nested deeper"):
+        judge(deep)
+    monkeypatch.setattr(contents, "LARGEST_PACKAGE", 100)
+    for name, sizes in (("one", [101]), ("sum", [60, 60])):
+        for number, size in enumerate(sizes):
+            (tmp_path / name).mkdir(exist_ok=True)
+            (tmp_path / name / f"{number}").write_bytes(bytes(size))
+        with pytest.raises(PackageError, match=r"larger than any package|no package"):
+            judge(tmp_path / name)
 
 
 def test_the_verdict_can_be_read_by_a_machine(approved_once, judge):

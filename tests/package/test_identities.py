@@ -83,7 +83,6 @@ def test_its_certificate_says_what_it_is(tmp_path):
     assert not usage.key_cert_sign
 
 
-@pytest.mark.skipif(sys.platform == "win32", reason="POSIX file modes")
 def test_key_and_folder_are_for_the_user_alone(tmp_path):
     mask = os.umask(0)
     try:
@@ -96,7 +95,6 @@ def test_key_and_folder_are_for_the_user_alone(tmp_path):
     assert stat.S_IMODE(file.stat().st_mode) == 0o600
 
 
-@pytest.mark.skipif(sys.platform == "win32", reason="POSIX file modes")
 @pytest.mark.parametrize("mode", [0o640, 0o604, 0o666])
 def test_a_key_that_others_can_read_is_refused(tmp_path, mode):
     self_issued_identity("Ann Ash", folder=tmp_path)

@@ -15,7 +15,6 @@ MOST = os.environ.get("KILL_POINTS", "6")
 SCRIPT = Path(__file__).with_name("kill_points.py")
 
 
-@pytest.mark.skipif(sys.platform == "win32", reason="forks a process at every step")
 @pytest.mark.parametrize(
     ("scenario", "least"),
     [
