@@ -65,7 +65,8 @@ def test_the_three_rotors_are_what_they_are_there_to_show(
     demo = run_demo(name)
     results = demo.results()
     critical = next(r["value"] for r in results["results"] if r["id"] == "critical-speed")
-    rated = json.loads((demo.package / "data" / "inputs.json").read_bytes())["speeds"]["rated"]["si"]
+    inputs = json.loads((demo.package / "data" / "inputs.json").read_bytes())
+    rated = inputs["speeds"]["rated"]["si"]
     if side == "below":
         assert rated < critical
         assert demo.status == 0
@@ -189,7 +190,7 @@ def test_demo_cases_fit_the_published_schema(path: Path) -> None:
 def test_the_executed_notebook_runs_again_on_its_own_and_gives_the_same(
     run_demo: Run, tmp_path: Path
 ) -> None:
-    """nbval compares every stored output; the numbers are compared through results.json."""
+    """Let nbval compare every stored output."""
     notebook = run_demo("exhauster").package / "data" / "calculation.ipynb"
     stored = nbformat.reads(notebook.read_text(), as_version=4)
     assert sum(bool(cell.get("outputs")) for cell in stored.cells) >= 10

@@ -19,7 +19,7 @@ FOLDERS = {"templates", "reportgen", "tests", "cases"}
 
 
 def rows(heading: str) -> list[list[str]]:
-    """The table under a heading, without its head."""
+    """Return the table under a heading, without its head."""
     part = README.split(f"## {heading}\n")[1].split("\n## ")[0]
     lines = [line for line in part.splitlines() if line.startswith("|")]
     return [[cell.strip() for cell in line.strip("|").split("|")] for line in lines[2:]]

@@ -21,7 +21,7 @@ class Numbering:
         self._headings: dict[str, nodes.Target] = {}
 
     def section(self, level: int, name: str, body: nodes.Inlines) -> nodes.Heading:
-        """Return a section with its number; a level that skips one is taken as the next that fits."""
+        """Return a section, numbered; a level that skips one is taken as the next that fits."""
         level = min(level, len(self._sections) + 1)
         kept = [*self._sections, 0][:level]
         kept[-1] += 1

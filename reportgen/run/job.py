@@ -196,7 +196,7 @@ def payload_of(
         "calculation.ipynb": notebook_bytes(executed.notebook),
         "results.json": _json(results),
         "case.yaml": case_path.read_bytes(),
-        **{name: content for name, content in sides.items()},
+        **sides,
         "inputs.json": _json(resolved),
         "environment.json": _json(environment()),
         "template.ipynb": template.read_bytes(),

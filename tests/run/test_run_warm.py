@@ -4,9 +4,11 @@ from __future__ import annotations
 
 import base64
 import os
+import shutil
 import signal
 import subprocess
 import sys
+import tempfile
 import time
 from collections.abc import Callable, Iterator
 from pathlib import Path
@@ -200,11 +202,15 @@ def sleeper(template: Write, tmp_path: Path) -> Iterator[Callable[[str], Any]]:
     say += f"t.write_text(f'{{os.getpid()}} {{os.getppid()}}'); t.rename({str(mark)!r})\n"
     path = template(say + "time.sleep(300)")
     started: list[subprocess.Popen[bytes]] = []
+    place = tempfile.mkdtemp(prefix="rt-")  # short, for the sockets in it
 
     def start(kernel: str) -> tuple[subprocess.Popen[bytes], int, int]:
         process = subprocess.Popen(
-            [sys.executable, "-c", SLEEPER, str(path), kernel], stderr=subprocess.DEVNULL
+            [sys.executable, "-c", SLEEPER, str(path), kernel],
+            env={**os.environ, "TMPDIR": place},
+            stderr=subprocess.DEVNULL,
         )
+        process.place = Path(place)  # type: ignore[attr-defined]
         started.append(process)
         deadline = time.monotonic() + 60
         while not mark.exists():
@@ -218,6 +224,7 @@ def sleeper(template: Write, tmp_path: Path) -> Iterator[Callable[[str], Any]]:
     for process in started:
         process.kill()
         process.wait()
+    shutil.rmtree(place)
 
 
 @pytest.mark.parametrize("kernel", ["warm", "plain"])
@@ -236,12 +243,15 @@ def test_kernels_do_not_outlive_a_killed_parent(sleeper: Callable[[str], Any]) -
     assert process.wait(20) == 1  # the run ends with an error and does not hang
 
 
-def test_an_interrupted_run_leaves_no_process_behind(sleeper: Callable[[str], Any]) -> None:
+def test_an_interrupted_run_leaves_no_process_and_no_folder_behind(
+    sleeper: Callable[[str], Any],
+) -> None:
     process, pid, parent = sleeper("warm")
     process.send_signal(signal.SIGINT)
     assert process.wait(20) != 0
     assert gone(pid)
     assert gone(parent)
+    assert list(process.place.iterdir()) == []
 
 
 @pytest.mark.parametrize("reason", ["no fork", "no start"])
