@@ -17,6 +17,7 @@ from importlib import resources
 _SPACES = re.compile("[\t\n\r\v\f\x85\u2028\u2029]+")
 _JOINERS = {0x200C, 0x200D, 0xFE0E, 0xFE0F}  # shape their neighbours; harmless on screen
 _LONG = 20  # characters without a break: more may not fit a column
+_RUN = re.compile(rf"([^\s\u200b/-]{{{_LONG + 1},}})")
 
 
 def acts(character: str) -> bool:
@@ -65,13 +66,14 @@ def listed(points: set[str], most: int = 40) -> str:
     return ", ".join(ordered[:most]) + (f" and {rest} more" if rest > 0 else "")
 
 
-def breakable(text: str) -> str:
-    """Return a text in which long words may break between any two characters."""
-    return re.sub(
-        rf"[^\s\u200b]{{{_LONG + 1},}}",
-        lambda m: "\u200b".join(m[0]),
-        text,
-    )
+def long_runs(text: str) -> Iterator[tuple[bool, str]]:
+    """Yield pieces of a text: whether it is too long a run to fit every column, and it.
+
+    A run ends where a line may break anyway: at a space, a hyphen or a stroke.
+    """
+    for n, piece in enumerate(_RUN.split(text)):
+        if piece:
+            yield n % 2 == 1, piece
 
 
 def _pieces(text: str, told: Callable[[str], bool]) -> Iterator[tuple[bool, str]]:

@@ -20,9 +20,9 @@ _HOLD_KINDS = {
 }
 _ROLES = (("prepared", "Prepared"), ("checked", "Checked"), ("approved", "Approved"))
 _STANDS = (
-    "This document stands only with the signatures of the persons named above. They are kept "
-    "in the package that holds this file; its HOW-TO-CHECK.txt tells how to check them, and "
-    "reportgen verify does it."
+    "This document stands only with the signatures of the persons named above. Once given, "
+    "each lies in its folder of the package that holds this file; HOW-TO-CHECK.txt there tells "
+    "how to check it, and reportgen verify does it."
 )
 _DRAFT = (
     "A draft: not for use. It cannot be signed; nobody has taken responsibility for its content."
@@ -225,7 +225,7 @@ def _sign_off(about: dict[str, Any]) -> Iterator[nodes.Block]:
 def _signature(step: str, about: dict[str, Any], named: bool) -> str:
     if about["status"] == "draft":
         return "none: a draft"
-    return f"in the package: signatures/{step}.p7s" if named else "none"
+    return f"once given: signatures/{step}/" if named else "none"
 
 
 def closing(

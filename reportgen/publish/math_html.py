@@ -24,6 +24,9 @@ _STANDING = {
 }  # fmt: skip
 """Accents that stand by themselves; browsers set those that combine beside their letter."""
 
+_INVISIBLE = ("\u2061", "\u2062", "\u2063", "\u2064")
+"""Function application, times, separator, plus: for who reads aloud; they have no shape."""
+
 
 def math(tree: Element, words: str, display: bool) -> str:
     """Return a formula as a ``math`` element; ``words`` tells it to who cannot see it."""
@@ -47,5 +50,5 @@ def _element(element: Element) -> str:
     own = element.text or "" if not len(element) else ""
     if tag == "mo" and own in _STANDING:
         own = _STANDING[own]
-    inner = escape(plain(own), quote=False)
+    inner = own if own in _INVISIBLE else escape(plain(own), quote=False)
     return f"<{tag}{shown}>{inner}{''.join(_element(child) for child in element)}</{tag}>"

@@ -12,6 +12,7 @@ _SIGNS = {
     "∫": "integral", "∏": "product", "→": "to", "∞": "infinity", "∂": "partial", "∈": "in",
     "′": "prime", "″": "double prime", "%": "percent", "|": "bar", "‖": "norm bar",
     "°": "degrees", "(": "(", ")": ")", ",": ",",
+    "\u2061": "", "\u2062": "", "\u2063": "", "\u2064": "",
 }  # fmt: skip
 _ACCENTS = {
     "\u0307": "dot", "\u0308": "double dot", "\u0302": "hat", "\u0303": "tilde",
@@ -89,8 +90,10 @@ def _scripted(element: Element) -> str:
             return f"{subject} {mark}"
         case "mover":
             return f"{subject} with {said[0]} above"
-        case "munder":
+        case "munder" if base.tag == "mo":
             return f"{subject} over {said[0]}"
+        case "munder":
+            return f"{subject} with {said[0]} below"
         case _:
             return f"{subject} from {said[0]} to {said[1]}"
 

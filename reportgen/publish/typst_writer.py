@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping
 
 from reportgen.publish import nodes
-from reportgen.publish.characters import breakable, for_paper, plain
+from reportgen.publish.characters import for_paper, long_runs, plain
 from reportgen.publish.formulas import Formulas
 from reportgen.publish.html_writer import plain_words
 
@@ -197,7 +197,10 @@ class TypstWriter:
                 self.code_points.add(piece)
                 parts.append(f"rg.code-point({string(piece)})")
             else:
-                parts.append(f"[#{string(breakable(piece))}]")
+                parts.extend(
+                    f"rg.breaking({string(run)})" if long else f"[#{string(run)}]"
+                    for long, run in long_runs(piece)
+                )
         return " + ".join(parts) or "[]"
 
     def text(self, words: str) -> str:

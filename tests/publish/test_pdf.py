@@ -1,0 +1,197 @@
+"""The PDF against PDF/A-3a and PDF/UA-1, and by its structure."""
+
+from __future__ import annotations
+
+import io
+import subprocess
+from collections.abc import Callable
+from pathlib import Path
+from types import ModuleType
+from typing import Any
+
+import pikepdf
+import pytest
+
+from reportgen.errors import PublishError
+from reportgen.publish import Published, publish
+
+Faults = Callable[[bytes], list[str]]
+ATTACHED = {"case.yaml": b"a: 1\n", "results.json": b"{}\n", "calculation.ipynb": b"{}\n"}
+
+
+@pytest.fixture(scope="module")
+def opened(published: Published) -> pikepdf.Pdf:
+    return pikepdf.open(io.BytesIO(published.pdf))
+
+
+def words(pdf: bytes, folder: Path) -> str:
+    place = folder / "r.pdf"
+    place.write_bytes(pdf)
+    done = subprocess.run(["pdftotext", "-layout", place, "-"], capture_output=True, check=True)
+    return done.stdout.decode()
+
+
+@pytest.mark.parametrize("status", ["draft", "for review", "for issue"])
+@pytest.mark.parametrize("units", ["si", "us"])
+def test_every_status_and_paper_is_pdf_a_and_pdf_ua(
+    sample: ModuleType, pdf_faults: Faults, status: str, units: str
+) -> None:
+    about = sample.results()["document"] | {"status": status}
+    text = "# One\n\nText $x^2$.\n\n## Two\n\n| a | b |\n|---|--:|\n| 1 | 2 |\n"
+    report = sample.small(sample.figure_block("f"), text=text, document=about, units=units)
+    assert pdf_faults(publish(report, attachments=ATTACHED).pdf) == []
+
+
+def test_the_full_sample_is_pdf_a_and_pdf_ua(published: Published, pdf_faults: Faults) -> None:
+    assert pdf_faults(published.pdf) == []
+    assert published.pdf.endswith(b"\n")
+
+
+def test_the_validation_sees_a_planted_fault(published: Published, pdf_faults: Faults) -> None:
+    broken = pikepdf.open(io.BytesIO(published.pdf))
+    del broken.Root.MarkInfo
+    out = io.BytesIO()
+    broken.save(out)
+    assert pdf_faults(out.getvalue())
+
+
+def test_metadata_says_what_the_document_is(opened: pikepdf.Pdf) -> None:
+    with opened.open_metadata() as metadata:
+        assert (
+            metadata["dc:title"]
+            == "CAL-0001 revision B: Lateral vibration of a made-up cooling fan"
+        )
+        assert metadata["dc:creator"] == ["A. Nyman"]
+        assert metadata["pdfaid:part"] == "3"
+        assert metadata["pdfuaid:part"] == "1"
+    assert str(opened.docinfo["/CreationDate"]).startswith("D:20260302")
+    assert str(opened.Root.Lang) == "en"
+
+
+def test_files_are_attached_unchanged(opened: pikepdf.Pdf) -> None:
+    found = {name: spec.get_file().read_bytes() for name, spec in opened.attachments.items()}
+    assert found == ATTACHED
+    relations = [str(spec.AFRelationship) for spec in opened.Root.AF]
+    assert sorted(relations) == ["/Data", "/Source", "/Source"]
+
+
+def test_every_font_is_embedded(opened: pikepdf.Pdf) -> None:
+    descriptors = [
+        one for one in opened.objects
+        if isinstance(one, pikepdf.Dictionary) and one.get("/Type") == "/FontDescriptor"
+    ]  # fmt: skip
+    assert len(descriptors) >= 3
+    for one in descriptors:
+        assert any(key in one for key in ("/FontFile", "/FontFile2", "/FontFile3")), one.FontName
+
+
+def tags(opened: pikepdf.Pdf) -> list[Any]:
+    return [
+        one for one in opened.objects
+        if isinstance(one, pikepdf.Dictionary) and "/S" in one and "/P" in one and "/K" in one
+    ]  # fmt: skip
+
+
+def test_figures_and_formulas_have_words(opened: pikepdf.Pdf) -> None:
+    kinds = [str(tag.S) for tag in tags(opened)]
+    for kind in ("/H1", "/H2", "/Table", "/TH", "/TD", "/L", "/Figure", "/Formula", "/Link"):
+        assert kind in kinds, kind
+    spoken = [tag for tag in tags(opened) if str(tag.S) in ("/Figure", "/Formula")]
+    assert len(spoken) > 10
+    assert all(str(tag.get("/Alt", "")).strip() for tag in spoken)
+    assert any("peaks at 1672 rpm" in str(tag.Alt) for tag in spoken)
+    assert any("square root of k over m" in str(tag.Alt) for tag in spoken)
+
+
+def test_the_outline_names_every_section(opened: pikepdf.Pdf) -> None:
+    with opened.open_outline() as outline:
+        titles = [item.title for item in outline.root]
+    assert [t for t in titles if t[0].isdigit()] == [
+        "1 Purpose and scope", "2 Method", "3 Results", "4 Awkward text", "5 Cautions",
+        "6 About this document",
+    ]  # fmt: skip
+    assert "Verdicts" in titles
+
+
+def test_each_page_says_what_it_belongs_to(published: Published, tmp_path: Path) -> None:
+    pages = words(published.pdf, tmp_path).split("\f")[:-1]
+    for n, one in enumerate(pages, 1):
+        assert one.count("CAL-0001 revision B") >= 2
+        assert f"page {n} of {len(pages)}" in one
+        assert "for review" in one
+        assert "2026-03-02" in one
+        assert "DRAFT" not in one
+
+
+def test_a_draft_says_so_on_every_page(sample: ModuleType, tmp_path: Path) -> None:
+    about = sample.results()["document"] | {"status": "draft"}
+    report = sample.small(sample.long_table("t", 90) | {"note": ""}, document=about)
+    pages = words(publish(report).pdf, tmp_path).split("\f")[:-1]
+    assert len(pages) >= 3
+    assert all("DRAFT – not for use" in one for one in pages)
+    assert "cannot be signed" in pages[0]
+    assert "signatures/" not in pages[0]
+
+
+def test_page_one_answers_first(published: Published, tmp_path: Path) -> None:
+    first = words(published.pdf, tmp_path).split("\f")[0]
+    for text in (
+        "Cooling fan, tag K-12", "What was asked", "Conclusion", "does not meet", "not assessed",
+        "84.1 µm 0-peak", "at most 60 µm 0-peak", "PS-4", "H2", "Revision history", "Sign-off",
+        "B. Okoro", "nobody named", "signatures/prepared/",
+    ):  # fmt: skip
+        assert text in first, text
+
+
+def test_a_long_table_repeats_its_head(published: Published, tmp_path: Path) -> None:
+    pages = words(published.pdf, tmp_path).split("\f")
+    assert sum("Remark" in one and "Ratio" in one for one in pages) >= 2
+
+
+def test_awkward_text_is_printed_as_text(published: Published, tmp_path: Path) -> None:
+    text = words(published.pdf, tmp_path)
+    for part in (
+        "<script>alert('x')</script>", "#panic(1) $x$ *bold* _it_ `raw` @ref <label>",
+        r"\input{/etc/passwd} \write18{ls}", "{{ 7*7 }} {% raw %}", "U+4E2D", "U+202E",
+        "U+1F642", "U+0007",
+    ):  # fmt: skip
+        assert part in text, part
+    assert "are printed as their Unicode code points" in " ".join(text.split())
+
+
+def test_links_lead_to_places_that_exist(opened: pikepdf.Pdf) -> None:
+    places = {
+        "https://example.org/a?b=1&c=2" if "/A" in note and note.A.get("/S") == "/URI" else "inside"
+        for one in opened.pages
+        for note in one.get("/Annots", [])
+    }
+    assert places == {"https://example.org/a?b=1&c=2", "inside"}
+
+
+@pytest.mark.parametrize(("units", "size"), [("si", (595, 842)), ("us", (612, 792))])
+def test_paper_follows_the_units(sample: ModuleType, units: str, size: tuple[int, int]) -> None:
+    opened = pikepdf.open(io.BytesIO(publish(sample.small(units=units)).pdf))
+    box = [round(float(v)) for v in opened.pages[0].MediaBox]
+    assert tuple(box[2:]) == size
+
+
+def test_a_date_that_is_none_is_refused(sample: ModuleType) -> None:
+    about = sample.results()["document"]
+    for date in ("2026-02-30", "soon"):
+        with pytest.raises(PublishError, match="date"):
+            publish(sample.small(document=about | {"date": date}))
+
+
+@pytest.mark.parametrize("name", ["title", "number", "project"])
+def test_ten_thousand_characters_do_not_break_the_page(
+    sample: ModuleType, pdf_faults: Faults, name: str
+) -> None:
+    about = sample.results()["document"] | {name: "W" * 10_000}
+    report = publish(sample.small(document=about))
+    assert pdf_faults(report.pdf) == []
+
+
+def test_the_same_notebook_gives_the_same_bytes(sample: ModuleType, published: Published) -> None:
+    again = publish(sample.full(), attachments=ATTACHED)
+    assert again.pdf == published.pdf
+    assert again.html == published.html
