@@ -87,6 +87,19 @@ def parser() -> argparse.ArgumentParser:
     )
     _add_identity_options(sign)
 
+    register = _command(commands, "register", "write one page and a CSV of an archive's packages")
+    register.add_argument("archive", type=Path, metavar="DIR", help="folder of packages")
+    register.add_argument(
+        "-o",
+        "--output",
+        type=Path,
+        metavar="FILE",
+        help="the page; the CSV stands beside it (default: register.html in DIR)",
+    )
+    register.add_argument(
+        "--verify", action="store_true", help="verify every package: slow, reads every byte"
+    )
+
     identity = _command(commands, "identity", "show the signing identity that would be used")
     identity.add_argument("--name", required=True, help="name of the person who signs")
     identity.add_argument(

@@ -61,6 +61,7 @@ def _print_json(value: Any) -> None:
 
 def _run(arguments: argparse.Namespace) -> int:
     from reportgen.run.job import Options, build
+    from reportgen.sheet.lines import plain
 
     options = Options(
         output=arguments.output,
@@ -86,7 +87,7 @@ def _run(arguments: argparse.Namespace) -> int:
                     "package": str(one.package),
                     "notes": one.notes,
                     "exit_status": one.exit_status,
-                    "conclusion": one.results["conclusion"],
+                    "conclusion": plain(one.results["conclusion"]),
                     "criteria": one.results["criteria"],
                     "holds": one.results["holds"],
                 }
@@ -272,6 +273,31 @@ def _verify(arguments: argparse.Namespace) -> int:
     return verification.exit_status
 
 
+# --- register ---------------------------------------------------------------------------------
+
+
+def _register(arguments: argparse.Namespace) -> int:
+    from reportgen.archive.register import read_register, to_json
+    from reportgen.archive.register_page import write_register
+
+    entries = read_register(arguments.archive, verify=arguments.verify)
+    page = arguments.output or arguments.archive / "register.html"
+    table = page.with_suffix(".csv")
+    write_register(arguments.archive, entries, page, table, verified=arguments.verify)
+    found = to_json(entries)
+    damaged = [entry for entry in entries if entry.fault]
+    if arguments.json:
+        _print_json({**found, "page": str(page), "table": str(table)})
+    else:
+        words = f"{found['packages']} packages, {found['latest']} latest of their number"
+        print(f"{words}, {found['do not meet']} of these do not meet a criterion")
+        for entry in damaged:
+            _note(f"{entry.place}: {entry.fault}")
+        print(f"register: {page}")
+        print(f"table: {table}")
+    return 4 if arguments.verify and damaged else 0
+
+
 def _show_identity(arguments: argparse.Namespace) -> int:
     identity = _identity(arguments, arguments.name)
     if arguments.pem:
@@ -298,5 +324,6 @@ _COMMANDS = {
     "templates": _templates,
     "sign": _sign,
     "verify": _verify,
+    "register": _register,
     "identity": _show_identity,
 }
