@@ -51,6 +51,8 @@ def inlines(value: Any) -> nodes.Inlines:
         return (nodes.Text(value),) if value else ()
     if isinstance(value, list | tuple):
         return tuple(inline for part in value for inline in inlines(part))
+    if isinstance(value, dict) and set(value) == {"ref", "text"}:
+        return (nodes.Reference(str(value["ref"]), inlines(value["text"])),)
     if isinstance(value, dict) and len(value) == 1:
         key, content = next(iter(value.items()))
         match key:

@@ -19,6 +19,7 @@ _HOLD_KINDS = {
     "data": "data",
 }
 _ROLES = (("prepared", "Prepared"), ("checked", "Checked"), ("approved", "Approved"))
+_NOBODY = "nobody named"
 _STANDS = (
     "This document stands only with the signatures of the persons named above. Once given, "
     "each lies in its folder of the package that holds this file; HOW-TO-CHECK.txt there tells "
@@ -44,6 +45,7 @@ def title_block(results: Results, house: House) -> Iterator[nodes.Field]:
         "date": about["date"],
         "project": about.get("project"),
         "client_reference": about.get("client_reference"),
+        **{key: (about.get(key) or {}).get("name", _NOBODY) for key, _ in _ROLES},
     }
     for key, value in values.items():
         if value:
@@ -58,8 +60,8 @@ def page_one(results: Results) -> Iterator[nodes.Block]:
     yield nodes.Notice("conclusion", text("Conclusion"), inlines(results["conclusion"]))
     yield from _verdicts(results["criteria"])
     yield from _holds(results)
-    yield from _history(results["document"].get("history") or [])
     yield from _sign_off(results["document"])
+    yield from _history(results["document"].get("history") or [])
     yield from _headline(results["results"])
 
 
@@ -203,7 +205,7 @@ def _sign_off(about: dict[str, Any]) -> Iterator[nodes.Block]:
             nodes.Row(
                 (
                     text(name),
-                    text(str(person.get("name") or "nobody named")),
+                    text(str(person.get("name") or _NOBODY)),
                     text(str(person.get("role") or "")),
                     text(_signature(key, about, bool(person))),
                 )
@@ -218,8 +220,8 @@ def _sign_off(about: dict[str, Any]) -> Iterator[nodes.Block]:
             nodes.Column(text("Signature")),
         ),
         rows,
+        _DRAFT if about["status"] == "draft" else _STANDS,
     )
-    yield nodes.Paragraph(text(_DRAFT if about["status"] == "draft" else _STANDS), "small")
 
 
 def _signature(step: str, about: dict[str, Any], named: bool) -> str:

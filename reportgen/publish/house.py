@@ -30,6 +30,9 @@ FIELDS = {
     "date": "Date",
     "project": "Project",
     "client_reference": "Client reference",
+    "prepared": "Prepared",
+    "checked": "Checked",
+    "approved": "Approved",
 }
 """The title block's entries and how they are named unless the house names them."""
 

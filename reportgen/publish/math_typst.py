@@ -35,6 +35,8 @@ _LINES = {
 }
 _MOVING = set("∑∏∐⋂⋃⋁⋀⨁⨂⨀⨄⨆")  # limits stand where Typst puts them: below, or beside in a line
 _INVISIBLE = {"\u2061", "\u2062", "\u2063", "\u2064"}
+_BARS = ("|", "\u2016")
+_SIDES = {"prefix": "opening", "postfix": "closing"}
 _NUMBER = re.compile(r"\d+(\.\d+)?")
 _WIDTH = re.compile(r"-?\d*\.?\d+em")
 
@@ -178,6 +180,8 @@ def _operator(element: Element) -> str:
         return f"lr(size:#{percent},{_sign(text)})"
     if element.get("stretchy") == "true" and element.get("form") == "infix":
         return f"mid({_sign(text)})"
+    if text in _BARS and (side := _SIDES.get(element.get("form", ""))):
+        return f'class("{side}",{_sign(text)})'
     return _quoted(text) if len(text) > 1 else _sign(text)
 
 

@@ -16,6 +16,7 @@ from reportgen.errors import PublishError
 PROSE = "commonmark+tex_math_dollars+pipe_tables+attributes+gfm_auto_identifiers"
 """What templates are written in: the prose that Jupyter shows, with math and tables."""
 
+_BARS = ("|", "\u2016")
 _MATHML = "{http://www.w3.org/1998/Math/MathML}"
 
 
@@ -124,4 +125,17 @@ def _bare(math: ElementTree.Element) -> ElementTree.Element:
         raise PublishError("a formula has no presentation in MathML")
     for element in shown.iter():
         element.tag = str(element.tag).removeprefix(_MATHML)
+    for element in shown.iter():
+        _close_bars(element)
     return shown
+
+
+def _close_bars(row: ElementTree.Element) -> None:
+    """Make every second bar of a row a closing one; pandoc takes all of them for opening."""
+    opened: dict[str | None, bool] = {}
+    for child in row:
+        scripted = child.tag in ("msub", "msup", "msubsup") and len(child)
+        sign = child[0] if scripted else child
+        if sign.tag == "mo" and sign.text in _BARS and sign.get("stretchy") == "false":
+            opened[sign.text] = not opened.get(sign.text, False)
+            sign.set("form", "prefix" if opened[sign.text] else "postfix")

@@ -25,6 +25,7 @@ _TYPES = {
     ".csv": ("text/csv", "source"),
     ".txt": ("text/plain", "supplement"),
 }
+_FEW = 30  # entries: contents this short stand on one page
 _PAPERS = {"a4": "a4", "letter": "us-letter"}
 
 
@@ -87,6 +88,7 @@ def typst_source(
     closing = writer.blocks(document.closing)
     about = _about(document, house, writer)
     fields = ", ".join(f"({writer.text(f.name)}, {writer.text(f.value)})" for f in document.fields)
+    entries = sum(heading.level <= 2 for heading in document.headings())
     lines = [
         # all names of ours stand behind rg: a bare one could hide one that formulas use
         '#import "report.typ" as rg',
@@ -98,7 +100,7 @@ def typst_source(
         *(_attach(n, name) for n, name in enumerate(attached)),
         f"rg.title-block(about, ({fields},))",
         front,
-        "rg.contents()",
+        f"rg.contents({str(entries < _FEW).lower()})",
         body,
         closing,
         _told(writer),

@@ -7,14 +7,16 @@ string, a formula what :mod:`reportgen.publish.math_typst` writes.
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
+from itertools import pairwise
 
 from reportgen.publish import nodes
 from reportgen.publish.characters import for_paper, long_runs, plain
 from reportgen.publish.formulas import Formulas
 from reportgen.publish.html_writer import plain_words
+from reportgen.publish.widths import Layout, layout, pieces
 
-_SIZES = ((6, "9.5pt"), (9, "8.5pt"), (10**6, "7pt"))  # type size by number of columns
-_SHORT, _SHORT_NUMBER = 14, 24  # characters: a column this narrow keeps its natural width
+_SHORT = 300.0  # points: a table this short never breaks across pages
+_TALL = 1500  # characters: a cell this long may not fit a page, so its row may break
 
 
 class TypstWriter:
@@ -27,7 +29,12 @@ class TypstWriter:
 
     def blocks(self, blocks: Iterable[nodes.Block]) -> str:
         """Return blocks, one statement each."""
-        return "\n".join(self.block(block) for block in blocks)
+        out: list[str] = []
+        for before, block in pairwise([nodes.Rule(), *blocks]):
+            if isinstance(before, nodes.Paragraph) and isinstance(block, nodes.Display):
+                out[-1] = f"block(sticky: true, {out[-1]})"  # what leads to a formula stays by it
+            out.append(self.block(block))
+        return "\n".join(out)
 
     def block(self, block: nodes.Block) -> str:
         """Return one block as a statement of a code block."""
@@ -79,56 +86,56 @@ class TypstWriter:
     def _table(self, table: nodes.Table) -> str:
         rows = []
         for row in table.rows:
-            cells = [self.inlines(cell) for cell in row.cells]
+            cells = [
+                self.inlines(cell, column.align == "right")
+                for cell, column in zip(row.cells, table.columns, strict=True)
+            ]
             if row.anchor:
                 cells[0] = f"[#metadata(none)#label({string(row.anchor)})#({cells[0]})]"
             rows.extend(cells)
-        size = next(s for most, s in _SIZES if len(table.columns) <= most)
+        laid = self._layout(table)
+        whole = laid.height < _SHORT
+        widths = ", ".join(f"{share:.4f}fr" for share in laid.shares)
         head = ", ".join(
             f'table.cell(text(weight: "semibold", {self.inlines(c.title)}))' for c in table.columns
         )
         align = ", ".join(c.align for c in table.columns)
+        tall = any(len(self._printed(cell)) > _TALL for row in table.rows for cell in row.cells)
         body = (
-            f"rg.rows-of({size}, ({self._widths(table)},), ({align},), ({head},), "
+            f"rg.rows-of({laid.size}pt, ({widths},), ({align},), {_bool(tall)}, ({head},), "
             f"({', '.join(rows)}{',' if rows else ''}))"
         )
         note = self.inlines(table.note) if table.note else "none"
         if table.label:
             return (
                 f"rg.numbered-table({string(table.anchor)}, {string(table.label)}, "
-                f"{self.inlines(table.caption)}, {note}, {body})"
+                f"{self.inlines(table.caption)}, {_bool(whole)}, {note}, {body})"
             )
-        small = f"\nblock(above: 2mm, rg.small({note}))" if table.note else ""
-        return body + small
+        return f"rg.plain-table({_bool(whole)}, {note}, {body})"
 
-    def _widths(self, table: nodes.Table) -> str:
-        """Return column widths: short columns as they are, the others by their content.
+    def _layout(self, table: nodes.Table) -> Layout:
+        return layout(
+            [self._printed(column.title) for column in table.columns],
+            [[self._printed(cell) for cell in row.cells] for row in table.rows],
+            [column.align == "right" for column in table.columns],
+            [column.width for column in table.columns],
+            self.document.paper,
+        )
 
-        Where all are short they share the width, so that every table is as wide as the text.
-        """
-        longest, typical = [], []
-        for n, column in enumerate(table.columns):
-            lengths = [len(self._words(row.cells[n])) for row in table.rows]
-            longest.append(max([len(self._words(column.title)), *lengths]))
-            typical.append(sum(lengths) / len(lengths) if lengths else longest[-1])
-        short = [
-            length <= (_SHORT_NUMBER if column.align == "right" else _SHORT)
-            for length, column in zip(longest, table.columns, strict=True)
-        ]
-        shared = all(short)
-        widths = []
-        for n, column in enumerate(table.columns):
-            if column.width:
-                widths.append(f"{column.width * 100:g}%")
-            elif short[n] and not shared:
-                widths.append("auto")
-            else:
-                share = (min(longest[n], 60) + min(typical[n], 60)) / 2
-                widths.append(f"{max(share, 8):.3g}fr")
-        return ", ".join(widths)
-
-    def _words(self, body: nodes.Inlines) -> str:
-        return plain_words(body, self.document, self.formulas)
+    def _printed(self, body: nodes.Inlines) -> str:
+        """Return about as many letters as a cell prints."""
+        out = []
+        for inline in body:
+            match inline:
+                case nodes.Math():
+                    out.append("".join(self.formulas.trees[inline.latex].itertext()))
+                case nodes.Strong() | nodes.Emphasis():
+                    out.append(self._printed(inline.body))
+                case nodes.Mark():
+                    out.append(f"{inline.verdict.replace(' ', '_')}mm")
+                case _:
+                    out.append(plain_words((inline,), self.document, self.formulas))
+        return "".join(out)
 
     # --- equations and figures ------------------------------------------------------------
 
@@ -162,27 +169,27 @@ class TypstWriter:
 
     # --- inlines --------------------------------------------------------------------------
 
-    def inlines(self, body: nodes.Inlines) -> str:
-        """Return inlines as one content expression."""
-        return " + ".join(self._inline(inline) for inline in body) if body else "[]"
+    def inlines(self, body: nodes.Inlines, value: bool = False) -> str:
+        """Return inlines as one content expression; in a value, numbers keep their units."""
+        return " + ".join(self._inline(inline, value) for inline in body) if body else "[]"
 
-    def _inline(self, inline: nodes.Inline) -> str:
+    def _inline(self, inline: nodes.Inline, value: bool = False) -> str:
         match inline:
             case nodes.Text():
-                return self._text(inline.text)
+                return self._value(inline.text) if value else self._text(inline.text)
             case nodes.Code():
                 return f"rg.code({self._text(inline.text)})"
             case nodes.Math():
                 return f"rg.formula({self._alt(inline.latex)}, {self._math(inline.latex)})"
             case nodes.Strong():
-                return f"strong({self.inlines(inline.body)})"
+                return f"strong({self.inlines(inline.body, value)})"
             case nodes.Emphasis():
                 return f"emph({self.inlines(inline.body)})"
             case nodes.Link():
                 return f"link({string(plain(inline.url))}, {self.inlines(inline.body)})"
             case nodes.Reference():
                 target = self.document.targets[inline.target]
-                body = self.inlines(inline.body) if inline.body else string(target.label)
+                body = self.inlines(inline.body, value) if inline.body else string(target.label)
                 return f"link(label({string(target.anchor)}), {body})"
             case nodes.Mark():
                 return f"rg.verdict({string(inline.verdict)})"
@@ -202,6 +209,14 @@ class TypstWriter:
                     for long, run in long_runs(piece)
                 )
         return " + ".join(parts) or "[]"
+
+    def _value(self, words: str) -> str:
+        """Return a value with its measure; a line may break between the two only."""
+        parts = [
+            f"box({self._text(piece)})" if whole else self._text(piece)
+            for piece, whole in pieces(words)
+        ]
+        return " + [ ] + ".join(parts) or "[]"
 
     def text(self, words: str) -> str:
         """Return a plain text as content."""
@@ -224,6 +239,10 @@ def string(words: str) -> str:
 def mapping(values: Mapping[str, str]) -> str:
     """Return a Typst dictionary whose values are expressions already."""
     return "(" + ", ".join(f"{string(key)}: {value}" for key, value in values.items()) + ")"
+
+
+def _bool(value: bool) -> str:
+    return "true" if value else "false"
 
 
 def _labelled(expression: str, anchor: str) -> str:

@@ -6,7 +6,8 @@ Publishing reads nothing else from code cells. A block is plain JSON.
 
 Text inside a block is *inline*: a plain string (always printed as text, never read
 as markup), ``{"math": latex}``, ``{"ref": id}`` (a numbered reference to the block,
-result or criterion with that id), ``{"strong": inline}``, or a list of these.
+result or criterion with that id; with ``"text": inline`` beside it, that text as the link),
+``{"strong": inline}``, or a list of these.
 """
 
 from __future__ import annotations

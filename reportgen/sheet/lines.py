@@ -94,4 +94,6 @@ def plain(inline: Inline) -> str:
         return inline
     if isinstance(inline, list):
         return "".join(plain(part) for part in inline)
+    if "ref" in inline and "text" in inline:
+        return plain(inline["text"])
     return plain(next(iter(inline.values())))

@@ -56,6 +56,8 @@ def as_text(block: Block) -> str:
 def _inline(inline: Inline) -> str:
     if isinstance(inline, list):
         return "".join(_inline(part) for part in inline)
+    if isinstance(inline, dict) and "text" in inline:
+        return _inline(inline["text"])
     if isinstance(inline, dict):
         key, value = next(iter(inline.items()))
         if key == "math":

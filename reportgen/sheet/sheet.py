@@ -22,6 +22,7 @@ from reportgen.sheet.blocks import (
     Results,
     Table,
 )
+from reportgen.sheet.conclusion import conclusion_of
 from reportgen.sheet.lines import Value, equation_line, plain
 from reportgen.sheet.plain import as_html, as_text
 
@@ -165,6 +166,7 @@ class Sheet:
                     "tolerance; the result may not be used until this is resolved",
                 }
             )
+        criteria = [self._criterion(judged) for judged in assessment.judged]
         results: Results = {
             "format": 1,
             "document": self._document,
@@ -172,9 +174,9 @@ class Sheet:
             "units": self.system,
             "machine": machine_words(self.case),
             "asked": asked,
-            "conclusion": conclusion or conclusion_words(assessment),
+            "conclusion": conclusion or conclusion_of(criteria, len(holds)),
             "results": [self._result(f) for f in assessment.findings if f.headline],
-            "criteria": [self._criterion(j) for j in assessment.judged],
+            "criteria": criteria,
             "holds": holds,
             "cautions": [f"{c.title}. {c.text}" for c in assessment.cautions],
             "not_assessed": list(assessment.not_assessed),
@@ -261,27 +263,3 @@ def machine_words(case: Any) -> str:
     machine = case.machine
     words = [machine.name, machine.tag, machine.service]
     return ", ".join(word for word in words if word)
-
-
-def conclusion_words(assessment: Assessment) -> str:
-    """Return the conclusion in one sentence, from the verdicts alone."""
-    by_verdict: dict[str, list[str]] = {"meets": [], "does not meet": [], "not assessed": []}
-    for judged in assessment.judged:
-        by_verdict[judged.outcome.verdict].append(judged.outcome.title)
-    total = len(assessment.judged)
-    if not total:
-        return "The case states no criterion: the results stand without a verdict."
-    failed, open_ = by_verdict["does not meet"], by_verdict["not assessed"]
-    if not failed and not open_:
-        count = "the one criterion" if total == 1 else f"all {total} criteria"
-        return f"The rotor meets {count} stated for it."
-    parts = []
-    if failed:
-        count = f"{len(failed)} of the {total} stated criteria"
-        parts.append(f"The rotor does not meet {count}: {'; '.join(failed)}")
-    else:
-        parts.append(f"The rotor meets {len(by_verdict['meets'])} of the {total} stated criteria")
-    if open_:
-        parts.append(f"not assessed: {'; '.join(open_)}")
-    text = ". ".join(parts)
-    return text[0].upper() + text[1:] + "."

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from typing import TYPE_CHECKING, Any
 
 from reportgen import units
@@ -13,35 +14,45 @@ if TYPE_CHECKING:
 
 
 def inputs(sheet: Sheet) -> None:
-    """Show every given with its value as stated, in SI, its source, tolerance and status."""
+    """Show every given as stated, in the other system of units, its source and status."""
     rows: list[list[Inline]] = []
     for path, title, given, quantity in sheet.case.givens():
+        other: units.System = "si" if _customary(given.as_given) else "us"
         rows.append(
             [
                 title or path,
                 given.as_given,
-                units.show(given.si, quantity, "si" if sheet.system == "us" else "us")
-                if _has_two_units(quantity)
-                else "",
+                units.show(given.si, quantity, other) if _has_two_units(quantity) else "",
                 given.tolerance_text or "–",
                 given.source or "not stated",
                 given.status,
             ]
         )
-    other = "SI" if sheet.system == "us" else "US"
     sheet.table(
         "inputs",
         "Givens, as stated in the case",
         [
-            {"title": "Quantity", "width": 0.24},
-            {"title": "As given", "align": "right", "width": 0.14},
-            {"title": f"In {other} units", "align": "right", "width": 0.14},
-            {"title": "Tolerance", "align": "right", "width": 0.1},
-            {"title": "Source", "width": 0.26},
-            {"title": "Status", "width": 0.12},
+            {"title": "Quantity"},
+            {"title": "As given", "align": "right"},
+            {"title": "Converted", "align": "right"},
+            {"title": "Tolerance", "align": "right"},
+            {"title": "Source"},
+            {"title": "Status"},
         ],
         rows,
+        note="Converted: in SI what is given in US customary units, and the other way round.",
     )
+
+
+_CUSTOMARY = {
+    "in", "inch", "ft", "foot", "mil", "thou", "lb", "lbm", "pound", "oz", "ounce", "lbf", "kip",
+    "klbf", "psi", "ksi", "Mpsi", "hp", "°F", "degF",
+}  # fmt: skip
+
+
+def _customary(as_given: str) -> bool:
+    """Tell whether a given is stated in US customary units."""
+    return not _CUSTOMARY.isdisjoint(re.findall(r"[^\W\d_]+|°F", as_given))
 
 
 def _has_two_units(quantity: str) -> bool:
@@ -58,10 +69,10 @@ def assumptions(sheet: Sheet) -> None:
         "assumptions",
         "Assumptions",
         [
-            {"title": "No.", "width": 0.07},
-            {"title": "Assumption", "width": 0.43},
-            {"title": "Basis", "width": 0.33},
-            {"title": "Status", "width": 0.17},
+            {"title": "No."},
+            {"title": "Assumption"},
+            {"title": "Basis"},
+            {"title": "Status"},
         ],
         [[a.id, a.text, a.basis or "not stated", a.status] for a in stated],
     )
@@ -140,13 +151,13 @@ def second_computations(sheet: Sheet, calc: Assessment) -> None:
         "second-computations",
         "Results computed twice",
         [
-            {"title": "Result", "width": 0.2},
-            {"title": "First", "align": "right", "width": 0.13},
-            {"title": "Second", "align": "right", "width": 0.13},
-            {"title": "Relative difference", "align": "right", "width": 0.11},
-            {"title": "Tolerance", "align": "right", "width": 0.1},
-            {"title": "", "width": 0.1},
-            {"title": "Second method, and why that tolerance", "width": 0.23},
+            {"title": "Result"},
+            {"title": "First", "align": "right"},
+            {"title": "Second", "align": "right"},
+            {"title": "Relative difference", "align": "right"},
+            {"title": "Tolerance", "align": "right"},
+            {"title": "Outcome"},
+            {"title": "Second method, and why that tolerance"},
         ],
         rows,
     )

@@ -65,6 +65,7 @@ def read_back(formulas: list[str]) -> list[Element]:
 
 
 SCRIPTS = {"mfrac", "msqrt", "mroot", "msub", "msup", "msubsup", "munder", "mover", "munderover"}
+BESIDE = {"munder": "msub", "mover": "msup", "munderover": "msubsup"}
 SAME = {
     "\u02d9": "\u0307", "\u00a8": "\u0308", "\u02c6": "\u0302", "^": "\u0302", "\u00af": "\u0304",
     "\u203e": "\u0304", "\u0305": "\u0304", "~": "\u0303", "\u02dc": "\u0303", "\u20d7": "\u2192",
@@ -86,6 +87,8 @@ def meaning(element: Element) -> list[Any]:
     if tag in SCRIPTS and tag != "msqrt":
         if element.get("linethickness") == "0":  # a fraction without a line is a column
             return [("mtable", [[meaning(child)] for child in children])]
+        if tag in BESIDE and "".join(children[0].itertext()) in math_typst._MOVING:
+            tag = BESIDE[tag]  # in a line, limits of a sum stand beside it in both
         return [(tag, [meaning(child) for child in children])]
     if tag == "mtable":
         # Typst's export writes an empty base of scripts as a table without rows
