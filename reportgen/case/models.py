@@ -7,6 +7,7 @@ from typing import Any
 from pydantic.json_schema import models_json_schema
 
 from reportgen.case.case import Case
+from reportgen.case.comparison import ComparisonCase
 from reportgen.case.lateral import LateralCase
 from reportgen.case.local import LocalCase
 from reportgen.case.onemass import OneMassCase
@@ -16,6 +17,7 @@ MODELS: dict[str, type[Case]] = {
     "one-mass-whirl": OneMassCase,
     "lateral-review": LateralCase,
     "transient-passage": PassageCase,
+    "revision-comparison": ComparisonCase,
 }
 """The model of each shipped template."""
 

@@ -1,0 +1,52 @@
+"""The assessment of a case by its template, for comparisons and studies."""
+
+from __future__ import annotations
+
+from importlib import import_module
+from importlib.util import find_spec
+from typing import TYPE_CHECKING, Any, cast
+
+import numpy as np
+
+from reportgen.errors import ModelError
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
+
+    from numpy.typing import NDArray
+
+    from reportgen.assess.model import Assessment
+    from reportgen.case import Case
+
+_HOMES = {"one-mass-whirl": "reportgen.assess.one_mass"}
+"""The module whose ``assess`` calculates a case of the template."""
+
+
+def assess_case(case: Case) -> Assessment:
+    """Calculate and judge a case of any template that has an assessment.
+
+    Raises
+    ------
+    ModelError
+        If the methods do not cover the case's values, or the template has no assessment.
+    """
+    home = _HOMES.get(case.template)
+    if home is None or find_spec(home) is None:
+        raise ModelError(f"a case of {case.template} cannot be calculated outside its report")
+    assess = cast("Callable[[Any], Assessment]", import_module(home).assess)
+    return assess(case)
+
+
+def curves_of(calc: Assessment) -> list[tuple[str, NDArray[np.float64], NDArray[np.float64]]]:
+    """Return the response curves of an assessment.
+
+    Returns
+    -------
+    list
+        Name (empty for a sole curve), speed [rad/s] and amplitude [m] (0-peak), each of
+        shape (n,); empty where the assessment has none.
+    """
+    speed, curve = getattr(calc, "curve_speed", None), getattr(calc, "curve", None)
+    if speed is None or curve is None:
+        return []
+    return [("", np.asarray(speed, float), np.abs(np.asarray(curve)))]
