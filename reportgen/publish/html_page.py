@@ -30,7 +30,8 @@ def html(document: nodes.Document, formulas: Formulas, house: House) -> bytes:
         If the file would exceed 5 MB.
     """
     writer = HtmlWriter(document, formulas)
-    style = _style(house)
+    standing = "DRAFT – not for use" if document.draft else document.status
+    style = _style(house, f"{document.number} revision {document.revision}, {standing}")
     script = _page("report.js")
     front, body = writer.blocks(document.front), writer.blocks(document.body)
     page = (
@@ -78,10 +79,19 @@ def html(document: nodes.Document, formulas: Formulas, house: House) -> bytes:
     return page
 
 
-def _style(house: House) -> str:
+def _style(house: House, running: str) -> str:
     font = resources.files("reportgen.publish").joinpath("page/math.woff2").read_bytes()
     style = _page("report.css").replace("#23395b", house.main).replace("#8a4b08", house.accent)
+    style = style.replace("%RUNNING%", _css_string(running))
     return style.replace("%MATH%", f"data:font/woff2;base64,{base64.b64encode(font).decode()}")
+
+
+def _css_string(words: str) -> str:
+    """Return what stands between the quotes of a CSS string: all but plain letters by number."""
+    return "".join(
+        c if c.isascii() and (c.isalnum() or c in " .,-") else f"\\{ord(c):x} "
+        for c in plain(words)
+    )
 
 
 def _page(name: str) -> str:

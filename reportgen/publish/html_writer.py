@@ -6,6 +6,7 @@ import base64
 import csv
 import io
 import json
+import re
 import unicodedata
 from html import escape
 from typing import Any
@@ -14,8 +15,11 @@ from urllib.parse import quote
 from reportgen.publish import drawing, nodes
 from reportgen.publish.characters import for_screen, plain
 from reportgen.publish.formulas import Formulas
+from reportgen.publish.widths import pieces
 
+_FEW_ROWS = 11  # a table of so many stays whole on a printed page
 _MARKS = {"meets": "meets", "does not meet": "fails", "not assessed": "open"}
+_MAY_BREAK = re.compile(r"[\s/-]")
 _RIGHT_TO_LEFT = ("R", "AL", "AN")
 
 
@@ -112,7 +116,10 @@ class HtmlWriter:
         rows = "".join(self._row(table, row) for row in table.rows)
         note = f'<p class="note">{self.inlines(table.note)}</p>' if table.note else ""
         anchor = f' id="{table.anchor}"' if table.anchor else ""
-        kind, role = ("table stack", _role("table")) if table.stacks else ("table", "")
+        kind = "table stack" if table.stacks else "table"
+        if len(table.rows) <= _FEW_ROWS:
+            kind += " short"
+        role = _role("table") if table.stacks else ""
         groups = _role("rowgroup") if table.stacks else ""
         return (
             f'<div class="{kind}"{anchor}><div class="scroll"><table{role}>{caption}'
@@ -125,7 +132,7 @@ class HtmlWriter:
         role = _role("row") if table.stacks else ""
         cells = []
         for n, (cell, column) in enumerate(zip(row.cells, table.columns, strict=True)):
-            inner = self.inlines(cell)
+            inner = self.inlines(cell, column.align == "right")
             if n == 0 and table.row_header and inner:
                 named = _role("rowheader") if table.stacks else ""
                 cells.append(f'<th scope="row"{named} class="{column.align}">{inner}</th>')
@@ -174,20 +181,20 @@ class HtmlWriter:
 
     # --- inlines --------------------------------------------------------------------------
 
-    def inlines(self, body: nodes.Inlines) -> str:
-        """Return inlines as HTML."""
-        return "".join(map(self._inline, body))
+    def inlines(self, body: nodes.Inlines, value: bool = False) -> str:
+        """Return inlines as HTML; in a value, numbers keep their units in the line."""
+        return "".join(self._inline(inline, value) for inline in body)
 
-    def _inline(self, inline: nodes.Inline) -> str:
+    def _inline(self, inline: nodes.Inline, value: bool = False) -> str:
         match inline:
             case nodes.Text():
-                return text(inline.text)
+                return _value(inline.text) if value else text(inline.text)
             case nodes.Code():
                 return f"<code>{text(inline.text)}</code>"
             case nodes.Math():
                 return self.formulas.html(inline.latex)
             case nodes.Strong():
-                return f"<strong>{self.inlines(inline.body)}</strong>"
+                return f"<strong>{self.inlines(inline.body, value)}</strong>"
             case nodes.Emphasis():
                 return f"<em>{self.inlines(inline.body)}</em>"
             case nodes.Link():
@@ -195,7 +202,7 @@ class HtmlWriter:
                 return f'<a href="{escape(inline.url)}" rel="noreferrer">{body}</a>'
             case nodes.Reference():
                 target = self.document.targets[inline.target]
-                body = self.inlines(inline.body) or text(target.label)
+                body = self.inlines(inline.body, value) or text(target.label)
                 return f'<a href="#{target.anchor}">{body}</a>'
             case nodes.Mark():
                 return f'<span class="verdict {_MARKS[inline.verdict]}">{inline.verdict}</span>'
@@ -238,6 +245,17 @@ def text(words: str, lines: bool = False) -> str:
     if any(unicodedata.bidirectional(c) in _RIGHT_TO_LEFT for c in words):
         return f"<bdi>{out}</bdi>"
     return out
+
+
+def _value(words: str) -> str:
+    """Return a value with its measure; a line may break between the two only."""
+    parts = [
+        f'<span class="whole">{text(piece)}</span>'
+        if whole and _MAY_BREAK.search(piece)
+        else text(piece)
+        for piece, whole in pieces(words)
+    ]
+    return " ".join(parts)
 
 
 def data_uri(content: bytes, kind: str) -> str:

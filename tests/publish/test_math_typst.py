@@ -89,13 +89,24 @@ def meaning(element: Element) -> list[Any]:
             return [("mtable", [[meaning(child)] for child in children])]
         if tag in BESIDE and "".join(children[0].itertext()) in math_typst._MOVING:
             tag = BESIDE[tag]  # in a line, limits of a sum stand beside it in both
-        return [(tag, [meaning(child) for child in children])]
+        return [_merged(tag, [meaning(child) for child in children])]
     if tag == "mtable":
         # Typst's export writes an empty base of scripts as a table without rows
         rows = [[meaning(cell) for cell in row] for row in children]
         return [("mtable", rows)] if rows else []
     inner = [part for child in children for part in meaning(child)]
     return [(tag, [inner])] if tag == "msqrt" else inner
+
+
+def _merged(tag: str, parts: list[list[Any]]) -> tuple[str, list[list[Any]]]:
+    """Return scripts on a letter that has one already as both at once; Typst sets them so."""
+    if tag in ("msub", "msup") and len(parts[0]) == 1 and isinstance(parts[0][0], tuple):
+        inner, (base, *scripts) = parts[0][0]
+        if (inner, tag) == ("msub", "msup"):
+            return "msubsup", [base, *scripts, parts[1]]
+        if (inner, tag) == ("msup", "msub"):
+            return "msubsup", [base, parts[1], *scripts]
+    return tag, parts
 
 
 def assert_same(formulas: list[str]) -> None:
