@@ -13,6 +13,7 @@ from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass, field
 from datetime import UTC, datetime, timedelta
+from functools import partial
 from pathlib import Path
 from typing import Any
 
@@ -177,35 +178,50 @@ DEMOS = tuple(sorted(path.stem for path in (Path(__file__).parents[1] / "cases")
 
 
 @pytest.fixture(scope="session")
-def run_demo(tmp_path_factory: pytest.TempPathFactory) -> Callable[[str], Demo]:
-    """Run a demo case by name as a user would; once for all processes of a test run."""
+def made_once(tmp_path_factory: pytest.TempPathFactory) -> Callable[..., Any]:
+    """Make something under a name once for all processes of a test run.
+
+    Its maker gets a folder of its own and returns plain JSON, which is what everybody gets.
+    """
     base = tmp_path_factory.getbasetemp()
     if os.environ.get("PYTEST_XDIST_WORKER"):
         base = base.parent
-    shared = base / "demos"
+    shared = base / "once"
     shared.mkdir(exist_ok=True)
 
-    def run(name: str) -> Demo:
-        place, record = shared / name, shared / f"{name}.json"
+    def once(name: str, make: Callable[[Path], Any]) -> Any:
+        record = shared / f"{name}.json"
         with one_at_a_time(shared / f"{name}.lock"):
             if not record.exists():
-                case = Path(__file__).parents[1] / "cases" / f"{name}.yaml"
-                done = subprocess.run(
-                    [sys.executable, "-m", "reportgen.cli", "run", str(case), "-o", str(place)],
-                    env={**os.environ, "REPORTGEN_HOME": str(shared / "identity")},
-                    capture_output=True,
-                    text=True,
-                    check=False,
-                )
-                record.write_text(
-                    json.dumps([str(case), done.returncode, done.stdout, done.stderr])
-                )
-        case_path, status, out, err = json.loads(record.read_text())
-        packages = (
-            sorted(path for path in place.iterdir() if path.is_dir()) if place.is_dir() else []
+                folder = shared / name
+                folder.mkdir(exist_ok=True)
+                record.write_text(json.dumps(make(folder)))
+        return json.loads(record.read_text())
+
+    return once
+
+
+@pytest.fixture(scope="session")
+def run_demo(made_once: Callable[..., Any]) -> Callable[[str], Demo]:
+    """Run a demo case by name as a user would; once for all processes of a test run."""
+
+    def make(case: Path, folder: Path) -> list[Any]:
+        place = folder / "reports"
+        done = subprocess.run(
+            [sys.executable, "-m", "reportgen.cli", "run", str(case), "-o", str(place)],
+            env={**os.environ, "REPORTGEN_HOME": str(folder.parent / "identity")},
+            capture_output=True,
+            text=True,
+            check=False,
         )
+        packages = sorted(str(p) for p in place.iterdir() if p.is_dir()) if place.is_dir() else []
+        return [str(case), done.returncode, done.stdout, done.stderr, packages]
+
+    def run(name: str) -> Demo:
+        case = Path(__file__).parents[1] / "cases" / f"{name}.yaml"
+        found, status, out, err, packages = made_once(f"demo-{name}", partial(make, case))
         assert len(packages) == 1, f"{name}: status {status}, {err}"
-        return Demo(Path(case_path), status, out, err, packages[0])
+        return Demo(Path(found), status, out, err, Path(packages[0]))
 
     return run
 
