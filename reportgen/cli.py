@@ -87,6 +87,19 @@ def parser() -> argparse.ArgumentParser:
     )
     _add_identity_options(sign)
 
+    compare = _command(commands, "compare", "show what changed between two calculations")
+    compare.add_argument("old", type=Path, metavar="OLD", help="package or case file")
+    compare.add_argument("new", type=Path, metavar="NEW", help="package or case file")
+    compare.add_argument(
+        "-o",
+        "--output",
+        type=Path,
+        metavar="DIR",
+        help="also leave the comparison as a signed package in this folder",
+    )
+    _add_document_options(compare)
+    _add_making_options(compare)
+
     register = _command(commands, "register", "write one page and a CSV of an archive's packages")
     register.add_argument("archive", type=Path, metavar="DIR", help="folder of packages")
     register.add_argument(
@@ -139,6 +152,11 @@ def _add_run_options(run: argparse.ArgumentParser) -> None:
         metavar="NAME",
         help="file name of a local template that may run; templates are code",
     )
+    _add_making_options(run)
+
+
+def _add_making_options(run: argparse.ArgumentParser) -> None:
+    """Add what any command that makes a package takes."""
     run.add_argument(
         "--house", type=Path, metavar="FILE", help="house file: letterhead, colours, closing text"
     )
@@ -160,6 +178,17 @@ def _add_run_options(run: argparse.ArgumentParser) -> None:
         help="warm: kernels forked from a prepared parent; plain: a new process each (default)",
     )
     _add_identity_options(run)
+
+
+def _add_document_options(command: argparse.ArgumentParser) -> None:
+    """Add the document control of a comparison; the rest is taken from the new calculation."""
+    control = command.add_argument_group("document control of the package")
+    control.add_argument("--number", help="(default: that of NEW with both revisions)")
+    control.add_argument("--title")
+    control.add_argument("--revision", help="(default: A)")
+    control.add_argument("--status", choices=("draft", "for review", "for issue"))
+    control.add_argument("--date", help="year-month-day (default: that of NEW)")
+    control.add_argument("--prepared", metavar="NAME", help="who prepares it (default: as NEW)")
 
 
 def _add_identity_options(command: argparse.ArgumentParser) -> None:

@@ -273,6 +273,82 @@ def _verify(arguments: argparse.Namespace) -> int:
     return verification.exit_status
 
 
+# --- compare ----------------------------------------------------------------------------------
+
+
+def _compare(arguments: argparse.Namespace) -> int:
+    from tempfile import TemporaryDirectory
+
+    from reportgen.archive import compare_print as told
+    from reportgen.archive.compare import load_side, write_comparison
+    from reportgen.assess.comparison import compare
+
+    with TemporaryDirectory(prefix="reportgen-") as scratch:
+        folders = [Path(scratch) / name for name in ("a", "b", "made")]
+        for folder in folders:
+            folder.mkdir()
+        sides = (load_side(arguments.old, folders[0]), load_side(arguments.new, folders[1]))
+        calc = compare(sides[0].case, sides[1].case)
+        package = None
+        if arguments.output is not None:
+            stated = {
+                key: getattr(arguments, key)
+                for key in ("number", "title", "revision", "status", "date")
+            }
+            if arguments.prepared:
+                stated["prepared"] = {"name": arguments.prepared}
+            case = write_comparison(*sides, folders[2], stated)
+            package = _made(case, arguments)
+    for note in told.archive_notes(sides, calc):
+        _note(note)
+    if arguments.json:
+        found = told.as_dict(sides, calc)
+        _print_json(found if package is None else {**found, "package": str(package)})
+    else:
+        from reportgen.sheet.comparison import conclusion
+
+        for caption, titles, rows in told.tables(calc):
+            _print_table(caption, titles, rows)
+        print(conclusion(calc))
+        if package is not None:
+            print(f"package: {package}")
+    return 3 if any(j.outcome.verdict == "does not meet" for j in calc.judged) else 0
+
+
+def _made(case: Path, arguments: argparse.Namespace) -> Path:
+    """Run a case that a command wrote and return its package."""
+    from reportgen.run.job import Options, build
+
+    options = Options(
+        output=arguments.output,
+        house=arguments.house,
+        kernel=arguments.kernel,
+        timeout=arguments.timeout,
+        replace_draft=arguments.replace_draft,
+    )
+    sign = None if arguments.no_sign else _first_signature(arguments)
+    one = build(case, options, _say, sign)
+    for note in one.notes:
+        _note(note)
+    return one.package
+
+
+def _print_table(caption: str, titles: tuple[str, ...], rows: list[tuple[str, ...]]) -> None:
+    from rich.console import Console
+    from rich.table import Table
+    from rich.text import Text
+
+    console = Console(highlight=False, width=None if sys.stdout.isatty() else 140)
+    table = Table(box=None, pad_edge=False, header_style="bold")
+    for title in titles:
+        table.add_column(title, overflow="fold")
+    for row in rows:
+        table.add_row(*(Text(cell) for cell in row))
+    console.print(Text(caption, style="bold"))
+    console.print(table if rows else "none")
+    console.print()
+
+
 # --- register ---------------------------------------------------------------------------------
 
 
@@ -324,6 +400,7 @@ _COMMANDS = {
     "templates": _templates,
     "sign": _sign,
     "verify": _verify,
+    "compare": _compare,
     "register": _register,
     "identity": _show_identity,
 }

@@ -260,14 +260,15 @@ def _drivers(
     found: Iterable[Change],
     before: Mapping[str, Quantity],
     after: Mapping[str, Quantity],
-) -> Iterator[Driver]:
-    """Yield what each changed input does: one at a time into the old case, and out of the new.
+) -> list[Driver]:
+    """Return what each changed input does: one at a time into the old case, out of the new.
 
     A change that makes no case of its own (one of two alternatives, a speed above the next)
     is taken together with all others of the section that holds it.
     """
     old, new = old_case.resolved(), new_case.resolved()
-    left = [change for change in found if change.counts]
+    counting = [change for change in found if change.counts]
+    left, drivers = list(counting), list[Driver]()
     while left:
         place = left[0].place
         while True:
@@ -276,14 +277,12 @@ def _drivers(
             if (into is not None and out_of is not None) or not place:
                 break
             place = place[:-1]
-        taken = tuple(c for c in left if c.place[: len(place)] == place)
+        taken = tuple(c for c in counting if c.place[: len(place)] == place)
         left = [c for c in left if c not in taken]
-        yield Driver(
-            place,
-            taken,
-            alone=_difference(into or {}, before),
-            last=_difference(after, out_of or {}),
-        )
+        drivers = [d for d in drivers if d.place[: len(place)] != place]
+        alone, last = _difference(into or {}, before), _difference(after, out_of or {})
+        drivers.append(Driver(place, taken, alone=alone, last=last))
+    return drivers
 
 
 def _computed(resolved: Mapping[str, Any]) -> dict[str, Quantity] | None:

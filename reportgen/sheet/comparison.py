@@ -307,14 +307,14 @@ def drivers(sheet: Sheet, calc: Comparison) -> None:
         ranked = ranking(calc, q)
         rest = 1.0 - sum(share for share, _ in ranked)
         parts: list[Inline] = [
-            f"{driver_title(d, titles)}: {signed(s, 'percent', sheet.system)}"
+            f"{driver_title(d, titles)}, {_unbroken(signed(s, 'percent', sheet.system))}"
             for s, d in ranked[:3]
         ]
         parts += [""] * (3 - len(parts))
         rows.append(
             [
                 q.title if not q.id.startswith("margin: ") else f"Margin: {q.title}",
-                change_of(q, sheet.system),
+                change_told(q, sheet.system),
                 *parts,
                 _rest(rest, ranked, sheet),
             ]
@@ -323,8 +323,8 @@ def drivers(sheet: Sheet, calc: Comparison) -> None:
         "drivers",
         "Which input drives each change: share of the whole change",
         [
-            {"title": "Result", "width": 0.24},
-            {"title": "Change", "align": "right", "width": 0.11},
+            {"title": "Result", "width": 0.22},
+            {"title": "Change", "align": "right", "width": 0.13},
             {"title": "Most by", "width": 0.19},
             {"title": "Then by", "width": 0.18},
             {"title": "Then by", "width": 0.17},
@@ -335,6 +335,18 @@ def drivers(sheet: Sheet, calc: Comparison) -> None:
         "its share is the mean of both. The rest is what other inputs do, and what inputs do "
         "only together. Shares can exceed 100 % where inputs work against one another.",
     )
+
+
+def change_told(q: Quantity, system: units.System) -> str:
+    """Return how much a quantity moved; of a margin, itself a share, both ends."""
+    if not q.id.startswith("margin: ") or q.old is None or q.new is None:
+        return change_of(q, system)
+    ends = (_unbroken(units.show(value, "percent", system, 3)) for value in (q.old, q.new))
+    return " to ".join(ends)
+
+
+def _unbroken(words: str) -> str:
+    return words.replace(" ", "\N{NO-BREAK SPACE}")
 
 
 def _rest(rest: float, ranked: list[tuple[float, Driver]], sheet: Sheet) -> str:
@@ -372,9 +384,8 @@ def told_of(calc: Comparison) -> list[Quantity]:
 def conclusion(calc: Comparison) -> str:
     """Return in a few sentences what changed, what moved, what flipped and what drives it."""
     inputs = sum(change.counts for change in calc.changes)
-    old, new = (c.document.revision for c in (calc.old_case, calc.new_case))
     parts = [
-        f"From revision {old} to revision {new} {_count(inputs, 'input')} and "
+        f"From {_names(calc)} {_count(inputs, 'input')} and "
         f"{_count(len(calc.moved), 'result')} changed"
     ]
     titles = titles_of(calc)
@@ -389,6 +400,13 @@ def conclusion(calc: Comparison) -> str:
     if not calc.flipped:
         parts.append("No verdict changed" if calc.judgements else "No criterion is stated")
     return ". ".join(parts) + "."
+
+
+def _names(calc: Comparison) -> str:
+    old, new = (case.document for case in (calc.old_case, calc.new_case))
+    if old.number == new.number:
+        return f"revision {old.revision} to revision {new.revision}"
+    return f"{old.number} revision {old.revision} to {new.number} revision {new.revision}"
 
 
 def _count(number: int, what: str) -> str:
