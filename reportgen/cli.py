@@ -100,6 +100,10 @@ def parser() -> argparse.ArgumentParser:
     _add_document_options(compare)
     _add_making_options(compare)
 
+    revise = _command(commands, "revise", "rerun a calculation with changed values as a revision")
+    _add_revise_options(revise)
+    _add_making_options(revise)
+
     register = _command(commands, "register", "write one page and a CSV of an archive's packages")
     register.add_argument("archive", type=Path, metavar="DIR", help="folder of packages")
     register.add_argument(
@@ -178,6 +182,48 @@ def _add_making_options(run: argparse.ArgumentParser) -> None:
         help="warm: kernels forked from a prepared parent; plain: a new process each (default)",
     )
     _add_identity_options(run)
+
+
+def _add_revise_options(revise: argparse.ArgumentParser) -> None:
+    revise.add_argument("source", type=Path, metavar="OLD", help="package or case file")
+    revise.add_argument(
+        "--set",
+        dest="settings",
+        action="append",
+        default=[],
+        metavar="PATH=VALUE",
+        help='value to set, such as speeds.rated="1520 rpm" or criteria[1].margin="25 %%"; '
+        "items count from 1; may be given more than once",
+    )
+    revise.add_argument(
+        "--remove", action="append", default=[], metavar="PATH", help="key or item to take out"
+    )
+    revise.add_argument("--revision", required=True, help="letter or number of the new revision")
+    revise.add_argument("--reason", required=True, help="why; goes into the document's history")
+    revise.add_argument("--date", help="year-month-day of the new revision (default: today)")
+    revise.add_argument("--by", default="", metavar="NAME", help="who made the change")
+    revise.add_argument("--status", default="", choices=("draft", "for review", "for issue"))
+    revise.add_argument(
+        "--source",
+        dest="origin",
+        default="",
+        metavar="TEXT",
+        help="source of the new values (default: the old source and the reason)",
+    )
+    revise.add_argument("--case", type=Path, metavar="FILE", help="also keep the new case here")
+    revise.add_argument("--no-run", action="store_true", help="write the case only (with --case)")
+    revise.add_argument(
+        "-o",
+        "--output",
+        type=Path,
+        default=Path("reports"),
+        metavar="DIR",
+        help="folder that the package is left in (default: reports)",
+    )
+    revise.add_argument(
+        "--allow-template", action="append", default=[], metavar="NAME",
+        help="file name of a local template that may run; templates are code",
+    )  # fmt: skip
 
 
 def _add_document_options(command: argparse.ArgumentParser) -> None:

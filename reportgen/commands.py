@@ -298,7 +298,7 @@ def _compare(arguments: argparse.Namespace) -> int:
             if arguments.prepared:
                 stated["prepared"] = {"name": arguments.prepared}
             case = write_comparison(*sides, folders[2], stated)
-            package = _made(case, arguments)
+            package = _made(case, arguments).package
     for note in told.archive_notes(sides, calc):
         _note(note)
     if arguments.json:
@@ -315,12 +315,13 @@ def _compare(arguments: argparse.Namespace) -> int:
     return 3 if any(j.outcome.verdict == "does not meet" for j in calc.judged) else 0
 
 
-def _made(case: Path, arguments: argparse.Namespace) -> Path:
-    """Run a case that a command wrote and return its package."""
+def _made(case: Path, arguments: argparse.Namespace) -> Any:
+    """Run a case that a command wrote and return what is done."""
     from reportgen.run.job import Options, build
 
     options = Options(
         output=arguments.output,
+        allow_templates=frozenset(getattr(arguments, "allow_template", ())),
         house=arguments.house,
         kernel=arguments.kernel,
         timeout=arguments.timeout,
@@ -330,7 +331,50 @@ def _made(case: Path, arguments: argparse.Namespace) -> Path:
     one = build(case, options, _say, sign)
     for note in one.notes:
         _note(note)
-    return one.package
+    return one
+
+
+def _revise(arguments: argparse.Namespace) -> int:
+    import datetime
+    from tempfile import TemporaryDirectory
+
+    from reportgen.archive.revise import Revision, Setting, copied, keep_case, revised_text
+
+    if arguments.no_run and arguments.case is None:
+        raise InputError(Problem("--no-run leaves nothing", "say where to with --case FILE"))
+    revision = Revision(
+        arguments.revision,
+        arguments.reason,
+        arguments.date or datetime.date.today().isoformat(),
+        by=arguments.by,
+        status=arguments.status,
+        source=arguments.origin,
+    )
+    settings = [Setting.parse(text) for text in arguments.settings]
+    with TemporaryDirectory(prefix="reportgen-") as scratch:
+        case = copied(arguments.source, Path(scratch))
+        text = revised_text(case, settings, arguments.remove, revision)
+        case.write_text(text, encoding="utf-8", newline="")
+        if arguments.case is not None:
+            keep_case(case, text, arguments.case)
+        found: dict[str, Any] = {"case": str(arguments.case)} if arguments.case else {}
+        if arguments.no_run:
+            one = None
+        else:
+            one = _made(case, arguments)
+            found |= {
+                "package": str(one.package),
+                "conclusion": one.results["conclusion"],
+                "criteria": one.results["criteria"],
+            }
+    if arguments.json:
+        _print_json(found)
+    else:
+        if one is not None:
+            _print_done(one)
+        if arguments.case is not None:
+            print(f"case: {arguments.case}")
+    return 0 if one is None else int(one.exit_status)
 
 
 def _print_table(caption: str, titles: tuple[str, ...], rows: list[tuple[str, ...]]) -> None:
@@ -401,6 +445,7 @@ _COMMANDS = {
     "sign": _sign,
     "verify": _verify,
     "compare": _compare,
+    "revise": _revise,
     "register": _register,
     "identity": _show_identity,
 }

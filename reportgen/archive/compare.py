@@ -56,7 +56,7 @@ def load_side(path: Path, scratch: Path) -> Side:
     path
         The case file or package.
     scratch
-        An empty folder; a package's case and side files are put there to be read.
+        A folder that is empty or not there; a package's case is put there to be read.
 
     Raises
     ------

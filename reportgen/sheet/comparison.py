@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import re
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from reportgen import units
 from reportgen.assess.comparison import check_archived
+from reportgen.case.base import walk
 from reportgen.case.changes import Change, is_given, is_table, spread_differs
 from reportgen.sheet.blocks import Inline
 from reportgen.sheet.figures import LINES, new
@@ -17,6 +19,7 @@ if TYPE_CHECKING:
     from reportgen.sheet.sheet import Sheet
 
 _MOST_SHOWN = 60
+_CRITERION = re.compile(r"criteria\[(\d+)\]")
 
 
 def revisions(sheet: Sheet, calc: Comparison) -> None:
@@ -113,9 +116,13 @@ def _left_out(count: int) -> str:
 
 
 def titles_of(calc: Comparison) -> dict[str, str]:
-    """Return the titles of the givens of both cases by path."""
-    both = (*calc.old_case.givens(), *calc.new_case.givens())
-    return {path: title for path, title, *_ in both if title}
+    """Return the titles of the givens of both cases by path, limits with their criterion."""
+    found: dict[str, str] = {}
+    for case in (calc.old_case, calc.new_case):
+        for path, title, _ in walk(case):
+            number = _CRITERION.match(path)
+            found[path] = f"{title} of criterion {number[1]}" if number else title
+    return found
 
 
 def title_of(change: Change, titles: dict[str, str]) -> str:
