@@ -92,12 +92,13 @@ class HtmlWriter:
         return "".join(map(self.block, item))
 
     def _notice(self, block: nodes.Notice) -> str:
-        tag = "div" if block.level == "conclusion" else "aside"
         title = self.inlines(block.title)
-        name = f' aria-label="{escape(self.words(block.title))}"' if tag == "aside" else ""
+        role = ""
+        if block.level != "conclusion":
+            role = f' role="note" aria-label="{escape(self.words(block.title))}"'
         return (
-            f'<{tag} class="notice {block.level}"{name}><p class="notice-title">{title}</p>'
-            f"<p>{self.inlines(block.body)}</p></{tag}>"
+            f'<div class="notice {block.level}"{role}><p class="notice-title">{title}</p>'
+            f"<p>{self.inlines(block.body)}</p></div>"
         )
 
     # --- tables ---------------------------------------------------------------------------

@@ -94,14 +94,21 @@ def _read(ax: PlotAxes) -> Axes:
             round(box.width, 5),
             round(box.height, 5),
         ),
-        "x_title": ax.get_xlabel(),
-        "y_title": ax.get_ylabel(),
+        "x_title": _title(ax, "x"),
+        "y_title": _title(ax, "y"),
         "x_range": cast("tuple[float, float]", tuple(_round(v) for v in ax.get_xlim())),
         "y_range": cast("tuple[float, float]", tuple(_round(v) for v in ax.get_ylim())),
         "x_scale": cast("Literal['linear', 'log']", ax.get_xscale()),
         "y_scale": cast("Literal['linear', 'log']", ax.get_yscale()),
         "curves": _curves(ax),
     }
+
+
+def _title(ax: PlotAxes, which: Literal["x", "y"]) -> str:
+    """Return an axis' title, of the one that shares it where it is written there only."""
+    shared = ax.get_shared_x_axes() if which == "x" else ax.get_shared_y_axes()
+    titles = [getattr(one, f"get_{which}label")() for one in (ax, *shared.get_siblings(ax))]
+    return next((str(title) for title in titles if title), "")
 
 
 def _curves(ax: PlotAxes) -> list[Curve]:

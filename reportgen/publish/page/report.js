@@ -127,7 +127,7 @@
     for (const box of document.querySelectorAll(".scroll")) {
       if (box.scrollWidth > box.clientWidth + 1) {
         box.tabIndex = 0;
-        box.setAttribute("role", "region");
+        box.setAttribute("role", "group");
         const name = box.querySelector("caption");
         box.setAttribute("aria-label", name ? name.textContent : "Wide content, scrolls sideways");
       } else for (const a of ["tabindex", "role", "aria-label"]) box.removeAttribute(a);
