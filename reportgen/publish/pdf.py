@@ -131,8 +131,8 @@ def _about(document: nodes.Document, house: House, writer: TypstWriter) -> dict[
         "paper": string(_PAPERS[document.paper]),
         "draft": str(document.draft).lower(),
         "status": writer.text(document.status),
-        "running": writer.text(f"{name}  {_clipped(document.title)}"),
-        "foot": writer.text(f"{name}, {document.status}, {document.date}"),
+        "running": writer.text(f"{_clipped(name)}  {_clipped(document.title)}"),
+        "foot": writer.text(f"{_clipped(name)}, {document.status}, {document.date}"),
         "house": writer.text(house.name) if house.name else "none",
         "logo": logo,
         "title": writer.text(document.title),
@@ -140,8 +140,9 @@ def _about(document: nodes.Document, house: House, writer: TypstWriter) -> dict[
     }
 
 
-def _clipped(title: str) -> str:
-    return title if len(title) <= 70 else f"{title[:69].rstrip()}…"
+def _clipped(words: str) -> str:
+    """Return what fits a line at a page's edge; page one has the words whole."""
+    return words if len(words) <= 70 else f"{words[:69].rstrip()}…"
 
 
 def _attach(n: int, name: str) -> str:

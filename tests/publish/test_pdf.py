@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import io
+import re
 import subprocess
 from collections.abc import Callable
 from pathlib import Path
@@ -17,6 +18,9 @@ from reportgen.publish import Published, publish
 
 Faults = Callable[[bytes], list[str]]
 ATTACHED = {"case.yaml": b"a: 1\n", "results.json": b"{}\n", "calculation.ipynb": b"{}\n"}
+
+
+DEMOS = sorted(p.stem for p in (Path(__file__).parents[2] / "cases").glob("*.yaml"))
 
 
 @pytest.fixture(scope="module")
@@ -75,14 +79,18 @@ def test_files_are_attached_unchanged(opened: pikepdf.Pdf) -> None:
     assert sorted(relations) == ["/Data", "/Source", "/Source"]
 
 
-def test_every_font_is_embedded(opened: pikepdf.Pdf) -> None:
+def unembedded(opened: pikepdf.Pdf) -> list[str]:
     descriptors = [
         one for one in opened.objects
         if isinstance(one, pikepdf.Dictionary) and one.get("/Type") == "/FontDescriptor"
     ]  # fmt: skip
     assert len(descriptors) >= 3
-    for one in descriptors:
-        assert any(key in one for key in ("/FontFile", "/FontFile2", "/FontFile3")), one.FontName
+    files = ("/FontFile", "/FontFile2", "/FontFile3")
+    return [str(one.FontName) for one in descriptors if not any(key in one for key in files)]
+
+
+def test_every_font_is_embedded(opened: pikepdf.Pdf) -> None:
+    assert unembedded(opened) == []
 
 
 def tags(opened: pikepdf.Pdf) -> list[Any]:
@@ -103,14 +111,17 @@ def test_figures_and_formulas_have_words(opened: pikepdf.Pdf) -> None:
     assert any("square root of k over m" in str(tag.Alt) for tag in spoken)
 
 
-def test_the_outline_names_every_section(opened: pikepdf.Pdf) -> None:
+def titles(opened: pikepdf.Pdf) -> list[str]:
     with opened.open_outline() as outline:
-        titles = [item.title for item in outline.root]
-    assert [t for t in titles if t[0].isdigit()] == [
+        return [item.title for item in outline.root]
+
+
+def test_the_outline_names_every_section(opened: pikepdf.Pdf) -> None:
+    assert [t for t in titles(opened) if t[0].isdigit()] == [
         "1 Purpose and scope", "2 Method", "3 Results", "4 Awkward text", "5 Cautions",
         "6 About this document",
     ]  # fmt: skip
-    assert "Verdicts" in titles
+    assert "Verdicts" in titles(opened)
 
 
 def test_each_page_says_what_it_belongs_to(published: Published, tmp_path: Path) -> None:
@@ -195,3 +206,41 @@ def test_the_same_notebook_gives_the_same_bytes(sample: ModuleType, published: P
     again = publish(sample.full(), attachments=ATTACHED)
     assert again.pdf == published.pdf
     assert again.html == published.html
+
+
+@pytest.mark.parametrize("name", DEMOS)
+def test_every_demo_is_a_report_to_file_and_to_read_aloud(
+    name: str, run_demo: Callable[[str], Any], pdf_faults: Faults, tmp_path: Path
+) -> None:
+    demo = run_demo(name)
+    held = demo.package / "data"
+    about = demo.results()["document"]
+    made = (held / "report.pdf").read_bytes()
+    assert pdf_faults(made) == []
+    opened = pikepdf.open(io.BytesIO(made))
+    assert unembedded(opened) == []
+    with opened.open_metadata() as metadata:
+        heading = f"{about['number']} revision {about['revision']}: {about['title']}"
+        assert metadata["dc:title"] == heading
+        assert metadata["dc:creator"] == [about["prepared"]["name"]]
+    for file, spec in opened.attachments.items():
+        assert spec.get_file().read_bytes() == (held / file).read_bytes(), file
+    assert {"case.yaml", "results.json", "calculation.ipynb"} <= set(opened.attachments)
+    spoken = [tag for tag in tags(opened) if str(tag.S) in ("/Figure", "/Formula")]
+    assert spoken
+    assert all(len(str(tag.get("/Alt", "")).strip()) > 0 for tag in spoken)
+    sections = re.findall(
+        r'<h2 id="section-[^>]*><span class="number">(\d+)</span> ([^<]*)</h2>',
+        (held / "report.html").read_text("utf-8"),
+    )
+    assert [t for t in titles(opened) if t[0].isdigit()] == [f"{n} {t}" for n, t in sections]
+    pages = words(made, tmp_path).split("\f")[:-1]
+    for n, one in enumerate(pages, 1):
+        assert one.count(f"{about['number']} revision {about['revision']}") >= 2
+        for part in (about["status"], about["date"], f"page {n} of {len(pages)}"):
+            assert part in one, part
+    for part in ("What was asked", "Conclusion", "Verdicts", "Open holds", "Prepared"):
+        assert part in pages[0], part
+    assert all(len(one.split()) > 60 for one in pages[:-1])  # no page is nearly empty
+    size = (612, 792) if demo.results()["units"] == "us" else (595, 842)
+    assert tuple(round(float(v)) for v in opened.pages[0].MediaBox)[2:] == size
