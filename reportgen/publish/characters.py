@@ -17,7 +17,7 @@ from importlib import resources
 _SPACES = re.compile("[\t\n\r\v\f\x85\u2028\u2029]+")
 _JOINERS = {0x200C, 0x200D, 0xFE0E, 0xFE0F}  # shape their neighbours; harmless on screen
 _LONG = 20  # characters without a break: more may not fit a column
-_RUN = re.compile(rf"([^\s\u200b/-]{{{_LONG + 1},}})")
+_RUN = re.compile(rf"((?:[^\s\u200b/-]|[/-](?=\d)){{{_LONG + 1},}})")
 
 
 def acts(character: str) -> bool:
@@ -69,7 +69,8 @@ def listed(points: set[str], most: int = 40) -> str:
 def long_runs(text: str) -> Iterator[tuple[bool, str]]:
     """Yield pieces of a text: whether it is too long a run to fit every column, and it.
 
-    A run ends where a line may break anyway: at a space, a hyphen or a stroke.
+    A run ends where a line may break anyway: at a space, and at a hyphen or a stroke that no
+    digit follows (Unicode Standard Annex 14, LB25).
     """
     for n, piece in enumerate(_RUN.split(text)):
         if piece:

@@ -25,11 +25,12 @@ _UNIT = re.compile(
     r"(?:×10[⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+)?(?: (?!peak|r\.m)[^\s\d]\S*){0,2}(?=\s|$)"  # its power, its unit
     r"|\S+"
 )
-_BREAKS = re.compile(r"[^\s/\u2010-\u2014-]+[/\u2010-\u2014-]*|\S")
+_BREAKS = re.compile(r"(?:[^\s/-]|[/-](?=\d))+[/-]*|\S")  # no break between hyphen and digit
 _BOLD = "nn"  # about what a bold word is wider
 _FEW_LINES = 1.9  # of words beside values in one line; where words take more, values break too
 _MOST_LINES = 2.4  # before a smaller type is tried
 _READ_WELL = 8.5  # points: below this only where words do not fit
+_MOST_EM = 45.0  # of a cell; longer ones claim no more of the width
 _MOST_KEPT = 24  # characters that never break; a longer word may
 
 
@@ -101,7 +102,8 @@ def _at(
         for n in columns
     ]
     whole = [
-        max(least[n], *(_PADDING + size * em(t) for t in _column(rows, n)), 0) for n in columns
+        max(least[n], *(_PADDING + size * min(em(t), _MOST_EM) for t in _column(rows, n)), 0)
+        for n in columns
     ]
     heads = [max(whole[n], _PADDING + size * em(head[n] + _BOLD)) for n in columns]
     if sum(least) > room:

@@ -50,3 +50,9 @@ def test_the_estimate_is_near_what_typst_measures(text: str) -> None:
     )
     measured = float(typst.query(source.encode(), "<x>", field="value", one=True))
     assert measured * 0.99 < 10 * em(text) < measured * 1.2
+
+
+def test_a_date_keeps_its_column_wide_enough() -> None:
+    long = "what changed in this revision of the document " * 6
+    made = layout(["Date", "What changed"], [["2026-01-12", long]], [False] * 2, [None] * 2, "a4")
+    assert made.shares[0] * ROOM["a4"] > made.size * em("2026-01-12")
