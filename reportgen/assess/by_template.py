@@ -15,7 +15,7 @@ if TYPE_CHECKING:
 
     from numpy.typing import NDArray
 
-    from reportgen.assess.model import Assessment
+    from reportgen.assess.model import Assessment, Judged
     from reportgen.case import Case
 
 _HOMES = {"one-mass-whirl": "reportgen.assess.one_mass"}
@@ -35,6 +35,24 @@ def assess_case(case: Case) -> Assessment:
         raise ModelError(f"a case of {case.template} cannot be calculated outside its report")
     assess = cast("Callable[[Any], Assessment]", import_module(home).assess)
     return assess(case)
+
+
+def judge_case(case: Case) -> tuple[Judged, ...]:
+    """Return the judged limits of a case alone.
+
+    A module that can judge without second computations has a ``judge`` for it.
+
+    Raises
+    ------
+    ModelError
+        As :func:`assess_case`.
+    """
+    home = _HOMES.get(case.template)
+    if home is not None and find_spec(home) is not None:
+        judge = getattr(import_module(home), "judge", None)
+        if judge is not None:
+            return cast("tuple[Judged, ...]", judge(case))
+    return assess_case(case).judged
 
 
 def curves_of(calc: Assessment) -> list[tuple[str, NDArray[np.float64], NDArray[np.float64]]]:

@@ -12,12 +12,14 @@ from reportgen.case.lateral import LateralCase
 from reportgen.case.local import LocalCase
 from reportgen.case.onemass import OneMassCase
 from reportgen.case.passage import PassageCase
+from reportgen.case.tolerances import StudyCase
 
 MODELS: dict[str, type[Case]] = {
     "one-mass-whirl": OneMassCase,
     "lateral-review": LateralCase,
     "transient-passage": PassageCase,
     "revision-comparison": ComparisonCase,
+    "tolerance-study": StudyCase,
 }
 """The model of each shipped template."""
 

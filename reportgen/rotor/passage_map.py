@@ -80,6 +80,34 @@ def peak_map(
     return flat.reshape(zeta.size, scaled.size)
 
 
+def ramp_peaks(
+    damping_ratio: Floats, acceleration: Floats, start: Floats, end: Floats
+) -> tuple[Floats, Floats]:
+    """Highest amplitude of many rotors, each on a ramp of its own that ends at its end speed.
+
+    Parameters
+    ----------
+    damping_ratio
+        ζ [-], shape (n,).
+    acceleration
+        Angular acceleration over ωₙ² [-], shape (n,), all of one sign.
+    start, end
+        Speeds over ωₙ at which the ramp starts from the steady whirl and ends, shape (n,).
+
+    Returns
+    -------
+    peak, at_end
+        Highest amplitude, and the one at the end speed, over e [-], shape (n,); to 1e-6.
+    """
+    peaks, ends = [np.empty(0)], [np.empty(0)]
+    for at in range(0, damping_ratio.size, _BLOCK):
+        block = [v[at : at + _BLOCK] for v in (damping_ratio, acceleration, start, end)]
+        last = _Ramp(*block[:3]).amplitude(block[3][:, None])[:, 0]
+        peaks.append(np.maximum(_peaks(*block), last))
+        ends.append(last)
+    return np.concatenate(peaks), np.concatenate(ends)
+
+
 @dataclass(frozen=True)
 class LeastAcceleration:
     """Acceleration needed to keep the peak of a passage below a limit.

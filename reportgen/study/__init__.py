@@ -1,1 +1,1 @@
-"""Tolerance studies over cases."""
+"""Tolerance studies: rotors drawn from the tolerances of a case, each judged by its limits."""
