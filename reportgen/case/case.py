@@ -11,6 +11,7 @@ from reportgen.case.base import Section, walk
 from reportgen.case.common import Assumption, Document, Machine
 from reportgen.case.criteria import Limit
 from reportgen.case.given import Given
+from reportgen.case.letterhead import HouseFile
 
 _CRITERION = re.compile(r"criteria\[(\d+)\]")
 _ASSUMED = re.compile(r"\bassum", re.IGNORECASE)
@@ -33,6 +34,7 @@ class Case(Section):
     document: Document
     machine: Machine
     units: Literal["si", "us"] = Field(examples=["si"])
+    house: Annotated[str, HouseFile()] | None = None
     assumptions: tuple[Assumption, ...] = ()
     _sides: dict[str, bytes] = PrivateAttr(default_factory=dict)
 

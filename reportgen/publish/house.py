@@ -120,6 +120,24 @@ def read_house(path: Path | str) -> House:
     return _Reader(path, data).house()
 
 
+def house_files(path: Path | str) -> dict[str, bytes]:
+    """Return the house file and its logo by name, as a package keeps them.
+
+    Raises
+    ------
+    InputError
+        As :func:`read_house`.
+    """
+    from ruamel.yaml import YAML
+
+    path = Path(path)
+    house = read_house(path)
+    files = {path.name: path.read_bytes()}
+    if house.logo:
+        files[str(YAML(typ="safe").load(files[path.name])["logo"]).strip()] = house.logo
+    return files
+
+
 class _Reader:
     """Collects every problem of one house file."""
 
@@ -190,6 +208,9 @@ class _Reader:
 
         name = self.words("logo")
         if not name:
+            return b""
+        if name != Path(name).name:
+            self.say("logo", f"{name!r} is not beside this file", "a file beside this one")
             return b""
         try:
             content = (self.path.parent / name).read_bytes()

@@ -24,6 +24,8 @@ _TYPES = {
     ".ipynb": ("application/x-ipynb+json", "source"),
     ".csv": ("text/csv", "source"),
     ".txt": ("text/plain", "supplement"),
+    ".svg": ("image/svg+xml", "supplement"),
+    ".png": ("image/png", "supplement"),
 }
 _FEW = 30  # entries: contents this short stand on one page
 _PAPERS = {"a4": "a4", "letter": "us-letter"}

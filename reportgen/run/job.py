@@ -9,10 +9,13 @@ from collections.abc import Callable
 from dataclasses import dataclass, field
 from importlib.metadata import version
 from pathlib import Path
-from typing import Any, Literal
+from typing import TYPE_CHECKING, Any, Literal
 
 from reportgen import __version__, resources
 from reportgen.errors import CellError, InputError, Problem, RunError
+
+if TYPE_CHECKING:
+    from reportgen.publish import House
 
 _SHOWN_VERSIONS = ("numpy", "scipy", "matplotlib", "papermill", "nbconvert", "typst")
 
@@ -28,7 +31,7 @@ class Options:
     allow_templates
         File names of local templates that may run.
     house
-        House file, if any.
+        House file, if any; it comes before the one that the case names.
     kernel
         ``warm`` or ``plain``.
     timeout
@@ -91,6 +94,8 @@ def build(
     case = read_case(case_path)
     template, origin = template_of(case, case_path, options)
     sides = side_files(case)
+    house, letterhead = house_of(case, case_path, options)
+    sides |= letterhead
     resolved = case.resolved()
     resolved["template_record"] = {
         "name": case.template,
@@ -98,7 +103,7 @@ def build(
         "digest": "sha512:" + hashlib.sha512(template.read_bytes()).hexdigest(),
     }
     resolved["provenance"] = provenance(case_path, sides, resolved["template_record"])
-    payload, results = payload_of(case_path, template, resolved, sides, options, say)
+    payload, results = payload_of(case_path, template, resolved, sides, options, say, house)
     say("writing the package")
     document = resolved["document"]
     kept: list[str] = []
@@ -112,6 +117,21 @@ def build(
         report=kept.append,
     )
     return Done(package, results, tuple(kept))
+
+
+def house_of(case: Any, case_path: Path, options: Options) -> tuple[House | None, dict[str, bytes]]:
+    """Return the letterhead, and what of it the case does not bring into the package itself.
+
+    The one of the options comes before the case's own.
+    """
+    from reportgen.publish import house_files, read_house
+
+    if options.house is not None:
+        files = {f"house/{name}": content for name, content in house_files(options.house).items()}
+        return read_house(options.house), files
+    if case.house is not None:
+        return read_house(case_path.parent / case.house), {}
+    return None, {}
 
 
 def template_of(case: Any, case_path: Path, options: Options) -> tuple[Path, str]:
@@ -173,10 +193,11 @@ def payload_of(
     sides: dict[str, bytes],
     options: Options,
     say: Say,
+    house: House | None = None,
 ) -> tuple[dict[str, bytes], dict[str, Any]]:
     """Execute, publish, and return every file of the payload by name, and the results."""
     from reportgen.package.howto import how_to_check
-    from reportgen.publish import publish, read_house
+    from reportgen.publish import publish
     from reportgen.run.environment import environment
     from reportgen.run.execute import execute
     from reportgen.run.normalise import notebook_bytes
@@ -203,7 +224,6 @@ def payload_of(
         "HOW-TO-CHECK.txt": how_to_check(document["number"], document["revision"]).encode(),
     }
     say("rendering the report")
-    house = read_house(options.house) if options.house else None
     attached = ("case.yaml", *sides, "results.json", "calculation.ipynb")
     report = publish(
         executed.notebook, house=house, attachments={name: payload[name] for name in attached}
