@@ -104,6 +104,16 @@ def parser() -> argparse.ArgumentParser:
     _add_revise_options(revise)
     _add_making_options(revise)
 
+    worst = _command(commands, "worst", "write the worst rotor of a tolerance study as a case")
+    worst.add_argument("package", type=Path, metavar="PACKAGE", help="of a tolerance study")
+    worst.add_argument(
+        "--criterion",
+        default="",
+        metavar="ID",
+        help="worst against this one, such as C2 (default: the least margin of all)",
+    )
+    worst.add_argument("--case", type=Path, required=True, metavar="FILE", help="case to write")
+
     register = _command(commands, "register", "write one page and a CSV of an archive's packages")
     register.add_argument("archive", type=Path, metavar="DIR", help="folder of packages")
     register.add_argument(

@@ -393,6 +393,24 @@ def _print_table(caption: str, titles: tuple[str, ...], rows: list[tuple[str, ..
     console.print()
 
 
+def _worst(arguments: argparse.Namespace) -> int:
+    from tempfile import TemporaryDirectory
+
+    from reportgen.archive.revise import keep_case
+    from reportgen.archive.worst import worst_case
+
+    with TemporaryDirectory(prefix="reportgen-") as scratch:
+        one = worst_case(arguments.package, arguments.criterion, Path(scratch))
+        keep_case(one.path, one.text, arguments.case)
+    found = {"case": str(arguments.case), "criterion": one.criterion, "margin": one.margin}
+    if arguments.json:
+        _print_json(found)
+    else:
+        print(f"worst against {one.criterion}: margin {100 * one.margin:.3g} % of the limit")
+        print(f"case: {arguments.case}")
+    return 0
+
+
 # --- register ---------------------------------------------------------------------------------
 
 
@@ -446,6 +464,7 @@ _COMMANDS = {
     "verify": _verify,
     "compare": _compare,
     "revise": _revise,
+    "worst": _worst,
     "register": _register,
     "identity": _show_identity,
 }

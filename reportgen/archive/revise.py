@@ -6,8 +6,6 @@ for and the document control, and nothing else.
 
 from __future__ import annotations
 
-import io
-import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -15,14 +13,22 @@ from typing import Any
 
 from reportgen.archive.compare import load_side
 from reportgen.archive.register import natural
+from reportgen.archive.yaml_edit import (
+    dumped,
+    flow,
+    loaded,
+    parent,
+    remove,
+    scalar,
+    set_value,
+    steps,
+    value_of,
+)
 from reportgen.case import Case, read_case, side_files
 from reportgen.case.changes import changes
-from reportgen.case.nodes import read_text
-from reportgen.case.reading import nearest
 from reportgen.errors import InputError, PackageError, Problem
 from reportgen.package.disk import write_file, write_files
 
-_STEP = re.compile(r"(?P<key>[^.\[\]]+)|\[(?P<item>\d+)\]")
 _LONGEST_SOURCE = 500
 
 
@@ -102,16 +108,16 @@ def revised_text(
     """
     old = read_case(path)
     _require_next(old, revision)
-    text, data, yaml = _loaded(path)
+    text, data, yaml = loaded(path)
     for setting in settings:
-        _set(data, setting.path, _value(setting.value))
+        set_value(data, setting.path, value_of(setting.value))
     for name in removed:
-        _remove(data, name)
+        remove(data, name)
     _advance(data, old, revision)
-    plain = _dumped(data, yaml, text)
+    plain = dumped(data, yaml, text)
     new = _read_again(path, plain)
     if _state_sources(data, old, new, settings, revision):
-        plain = _dumped(data, yaml, text)
+        plain = dumped(data, yaml, text)
         new = _read_again(path, plain)
     _require_only(old, new, [*(s.path for s in settings), *removed])
     return plain
@@ -169,168 +175,6 @@ def _require_next(old: Case, revision: Revision) -> None:
         raise InputError(Problem("no reason is given", "say why with --reason"))
 
 
-def _loaded(path: Path) -> tuple[str, Any, Any]:
-    _, text = read_text(path)
-    yaml = _reader()
-    sequence, offset = _indentation(text)
-    yaml.indent(mapping=2, sequence=sequence, offset=offset)
-    return text, yaml.load(text), yaml
-
-
-def _reader() -> Any:
-    """Return a reader and writer that keeps comments, and every scalar as the text it is."""
-    from ruamel.yaml import YAML, ScalarNode
-    from ruamel.yaml.resolver import VersionedResolver
-
-    class Words(VersionedResolver):
-        """No 1.10 becomes 1.1, no 0417 an octal, no date another."""
-
-        def resolve(self, kind: Any, value: Any, implicit: Any) -> Any:
-            if kind is ScalarNode:
-                return self.DEFAULT_SCALAR_TAG
-            return super().resolve(kind, value, implicit)
-
-    yaml = YAML(typ="rt")
-    yaml.Resolver = Words
-    yaml.preserve_quotes = True
-    yaml.width = 10_000
-    return yaml
-
-
-def _indentation(text: str) -> tuple[int, int]:
-    """Return how the file indents its lists: width of an item, place of its hyphen."""
-    found = re.search(r"^( *)[^\s#-][^\n]*:[ \t]*(?:#[^\n]*)?\n(?: *(?:#[^\n]*)?\n)*( *)- ",
-                      text, re.MULTILINE)  # fmt: skip
-    offset = len(found[2]) - len(found[1]) if found else 2
-    return offset + 2, max(offset, 0)
-
-
-def _dumped(data: Any, yaml: Any, like: str) -> str:
-    out = io.StringIO()
-    yaml.dump(data, out)
-    text = out.getvalue()
-    return text.replace("\n", "\r\n") if "\r\n" in like else text
-
-
-def _value(text: str) -> Any:
-    """Return a value as written: a mapping or list in braces or brackets, else a text."""
-    if text[:1] not in ("{", "["):
-        return _scalar(text)
-    from ruamel.yaml.error import YAMLError
-
-    try:
-        return _reader().load(text)
-    except YAMLError as error:
-        found = f"{text!r} is not YAML: {getattr(error, 'problem', None) or error}"
-        raise InputError(Problem(found, "check brackets, braces and quotes")) from None
-
-
-def _scalar(text: str) -> Any:
-    from ruamel.yaml.scalarstring import DoubleQuotedScalarString
-
-    # what YAML reads as nothing stands in quotes; the writer sees to all else
-    return DoubleQuotedScalarString(text) if text in ("~", "null", "Null", "NULL") else text
-
-
-def steps(path: str) -> list[str | int]:
-    """Return the keys and items (from 0) of a path such as ``criteria[2].margin``.
-
-    Raises
-    ------
-    InputError
-        If it is no path.
-    """
-    found: list[str | int] = []
-    end = 0
-    for match in _STEP.finditer(path):
-        between = path[end : match.start()]
-        if between not in (("", ".") if match["key"] else ("",)) or (not found and between):
-            break
-        if match["item"] is not None:
-            if int(match["item"]) == 0:
-                raise InputError(Problem("items count from 1", "write [1] for the first", "", 0, 0,
-                                         path))  # fmt: skip
-            found.append(int(match["item"]) - 1)
-        else:
-            found.append(match["key"].strip())
-        end = match.end()
-    if end != len(path) or not found or not isinstance(found[0], str):
-        remedy = "write keys with points and items in brackets, as in criteria[2].margin"
-        raise InputError(Problem(f"{path!r} is no path", remedy))
-    return found
-
-
-def _parent(data: Any, path: str) -> tuple[Any, str | int]:
-    parts = steps(path)
-    at = data
-    for part in parts[:-1]:
-        at = _child(at, part, path)
-    return at, parts[-1]
-
-
-def _child(at: Any, part: str | int, path: str) -> Any:
-    if isinstance(part, int):
-        if not isinstance(at, list):
-            raise InputError(Problem("there is no list here", "leave the brackets out", field=path))
-        if part >= len(at):
-            found = f"the list has {len(at)} items, none of number {part + 1}"
-            raise InputError(Problem(found, f"give 1 to {len(at)}", field=path))
-        return at[part]
-    if not isinstance(at, Mapping):
-        raise InputError(Problem(f"{part!r} lies below a single value", "give its parent a mapping",
-                                 field=path))  # fmt: skip
-    if part not in at:
-        near = nearest(part, [str(key) for key in at])
-        remedy = f"did you mean {near!r}?" if near else f"there are {', '.join(map(str, at))}"
-        raise InputError(Problem(f"there is no {part!r} here", remedy, field=path))
-    return at[part]
-
-
-def _set(data: Any, path: str, value: Any) -> None:
-    at, last = _parent(data, path)
-    if isinstance(last, int):
-        if isinstance(at, list) and last == len(at):
-            at.append(value)
-            return
-        old = _child(at, last, path)
-    else:
-        if not isinstance(at, dict):
-            if last in ("source", "status", "tolerance", "distribution", "value"):
-                _widen(data, path, at, str(last), value)
-                return
-            _child(at, last, path)
-        old = at.get(last)
-    if isinstance(old, dict) and "value" in old and isinstance(value, str):
-        old["value"] = value
-    elif isinstance(old, (Mapping, list)) and isinstance(value, str):
-        found = "a section stands here, not a value"
-        keys = ", ".join(map(str, old)) if isinstance(old, Mapping) else f"[1] to [{len(old)}]"
-        raise InputError(Problem(found, f"set one of {keys}", field=path))
-    else:
-        at[last] = value
-
-
-def _widen(data: Any, path: str, short: Any, key: str, value: Any) -> None:
-    """Set a source or tolerance of a given that is written short, as its value alone."""
-    above = path.rpartition(".")[0]
-    at, last = _parent(data, above)
-    at[last] = _flow({"value": str(short), key: value})
-
-
-def _flow(pairs: Mapping[str, Any]) -> Any:
-    from ruamel.yaml.comments import CommentedMap
-
-    made = CommentedMap(pairs)
-    made.fa.set_flow_style()
-    return made
-
-
-def _remove(data: Any, path: str) -> None:
-    at, last = _parent(data, path)
-    _child(at, last, path)
-    del at[last]
-
-
 def _advance(data: Any, old: Case, revision: Revision) -> None:
     """Give the document its next revision and carry the history forward."""
     document, was = data["document"], old.document
@@ -340,15 +184,15 @@ def _advance(data: Any, old: Case, revision: Revision) -> None:
         document["history"] = entries = []
     if was.revision not in [entry.revision for entry in was.history]:
         first = "First issue" if not was.history else "Issued"
-        entries.append(_flow({"revision": was.revision, "date": was.date, "text": first,
-                              "by": _scalar(was.prepared.name)}))  # fmt: skip
-    entries.append(_flow({"revision": revision.revision, "date": revision.date,
-                          "text": _scalar(" ".join(revision.reason.split())),
-                          "by": _scalar(by)}))  # fmt: skip
+        entries.append(flow({"revision": was.revision, "date": was.date, "text": first,
+                              "by": scalar(was.prepared.name)}))  # fmt: skip
+    entries.append(flow({"revision": revision.revision, "date": revision.date,
+                          "text": scalar(" ".join(revision.reason.split())),
+                          "by": scalar(by)}))  # fmt: skip
     document["revision"], document["date"] = revision.revision, revision.date
     document["status"] = revision.status or next_status(was.status)
     if revision.by and revision.by != was.prepared.name:
-        document["prepared"] = _flow({"name": _scalar(revision.by)})
+        document["prepared"] = flow({"name": scalar(revision.by)})
 
 
 def _state_sources(
@@ -364,11 +208,11 @@ def _state_sources(
         if f"{path}.source" in stated or given == before.get(path):
             continue
         words = revision.source or _appended(given.source, revision)
-        at, last = _parent(data, path)
+        at, last = parent(data, path)
         if isinstance(at[last], dict):
-            at[last]["source"] = _scalar(words)
+            at[last]["source"] = scalar(words)
         else:
-            at[last] = _flow({"value": at[last], "source": _scalar(words)})
+            at[last] = flow({"value": at[last], "source": scalar(words)})
         changed = True
     return changed
 

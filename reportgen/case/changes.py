@@ -14,7 +14,15 @@ from typing import Any
 from reportgen.case.base import words_of
 
 Place = tuple[str | int, ...]
-_NOT_CALCULATED = ("reportgen", "template", "document", "machine", "units", "assumptions")
+_NOT_CALCULATED = (
+    "reportgen",
+    "template",
+    "document",
+    "machine",
+    "units",
+    "assumptions",
+    "house",
+)
 _SPREAD = ("tolerance", "distribution")
 
 

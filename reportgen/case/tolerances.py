@@ -10,7 +10,7 @@ from reportgen.case.base import Line, Section
 from reportgen.case.case import Case, criteria_of
 from reportgen.case.common import problem
 from reportgen.case.criteria import Limit, Share
-from reportgen.case.given import Given, Of
+from reportgen.case.given import Given
 from reportgen.case.inner import CaseFile, CaseOf
 
 _LEAST, _MOST = 64, 1 << 18
@@ -24,7 +24,7 @@ class Sampling(Section):
     method: Literal["sobol", "latin hypercube", "random"] = Field(examples=["sobol"])
     samples: int = Field(ge=_LEAST, le=_MOST, examples=[1024])
     seed: int = Field(ge=0, le=2**32 - 1, examples=[20260316])
-    confidence: Annotated[Given, Of("percent", at_least=0.5, below=1.0)] | None = None
+    confidence: Literal["90 %", "95 %", "99 %"] = "95 %"
     interval: Literal["clopper-pearson", "wilson"] = "clopper-pearson"
 
     @model_validator(mode="after")

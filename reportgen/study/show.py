@@ -346,14 +346,17 @@ def conclusion(study: Study) -> str:
     told = max(failing, key=lambda i: study.shares[i].failing) if failing else at
     if told is not None and (leading := study.sensitivities[told].leading) is not None:
         parts.append(
-            f"The margin against {study.titles[told]} is driven most by "
+            f"The margin of the {_lower(study.titles[told])} is driven most by "
             f"{study.varied[leading].title.lower()}"
         )
-    for verdict in ("does not meet", "not assessed"):
+    for verdict, what in (
+        ("does not meet", "The share is above its limit for"),
+        ("not assessed", "The samples do not decide the share for"),
+    ):
         names = [j.outcome.title for j in study.judged if j.outcome.verdict == verdict]
         if names:
-            what = "Not allowed is" if verdict == "does not meet" else "Not decided is"
-            parts.append(f"{what} the share of {'; '.join(_lower(name) for name in names)}")
+            told_of = "; ".join(_lower(name.partition(": ")[2]) for name in names)
+            parts.append(f"{what}: {told_of}")
     if study.judged and all(j.outcome.verdict == "meets" for j in study.judged):
         parts.append("Every stated share is kept")
     return ". ".join(parts) + "."

@@ -132,7 +132,7 @@ def run_study(case: StudyCase, mapper: Mapper | None = None) -> Study:
     values = values_of(varied, drawn.all())
     outcomes = model.outcomes(values, mapper)
     both = Outcomes(outcomes.margin[:, : 2 * plan.samples], outcomes.verdict[:, : 2 * plan.samples])
-    confidence = float(plan.confidence) if plan.confidence is not None else 0.95
+    confidence = 0.01 * float(plan.confidence.removesuffix(" %"))
     shares = tuple(
         _share(title, both.verdict[i], confidence, plan.interval)
         for i, title in enumerate(model.titles)
@@ -212,10 +212,10 @@ def _share_findings(shares: tuple[Share, ...], any_share: Share, again: Outcomes
         failing, assessed = int((verdict == FAILS).sum()), int((verdict != OPEN).sum())
         if share.value is not None and assessed:
             second = SecondComputation(
-                f"{assessed} independent random samples",
+                f"{assessed} random samples",
                 failing / assessed,
                 _apart(share, failing, assessed),
-                "four standard errors of both shares",
+                "4 standard errors of both",
             )
         what = "any criterion" if last else share.title
         found.append(
@@ -300,10 +300,10 @@ def _margin(
         # a margin is a difference of near numbers: compare as shares of the limit
         tolerance = 1e-5 / max(abs(value), 1e-12)
         second = SecondComputation(
-            "the whole assessment of that rotor",
+            "whole assessment of that rotor",
             math.nan if again is None else again,
             tolerance,
-            "passages to 10⁻⁶, as a share of the limit",
+            "10⁻⁵ of the limit: passages",
         )
     return Finding(
         id=name,
