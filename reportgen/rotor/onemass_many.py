@@ -64,13 +64,13 @@ class ManyRotors:
         """
         zeta = np.asarray(self.damping_ratio)
         square = zeta**2
-        lead = 1.0 - 8.0 * square * (1.0 - square)
-        lead = np.where((lead > 0.0) & (2.0 * square < 1.0), lead, np.nan)
         half, middle = 2.0 * zeta * np.sqrt(1.0 - square), 1.0 - 2.0 * square
+        lead = 1.0 - 8.0 * square * (1.0 - square)
+        both = (lead > 0.0) & (middle > 0.0)
+        ends = np.where(both, middle + half, np.nan)
         # the lower root by the product of both, so that it keeps its digits
-        upper = (middle + half) / lead
-        lower = 1.0 / (middle + half)
-        peak = 1.0 / np.sqrt(np.where(middle > 0.0, middle, np.nan))
+        upper, lower = ends / np.where(both, lead, np.nan), 1.0 / ends
+        peak = 1.0 / np.sqrt(np.where(both, middle, np.nan))
         return np.asarray(peak / (np.sqrt(upper) - np.sqrt(lower)))
 
     def amplitude(self, speed: Values) -> Floats:

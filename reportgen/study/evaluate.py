@@ -17,8 +17,10 @@ from typing import Any
 import numpy as np
 
 from reportgen.assess.by_template import assess_case, judge_case
+from reportgen.assess.model import Judged
 from reportgen.case import from_resolved
 from reportgen.case.changes import Place
+from reportgen.criteria import Outcome
 from reportgen.errors import InputError, ModelError
 from reportgen.study.inputs import case_with
 from reportgen.study.one_mass import FAILS, MEETS, OPEN, Many, Verdicts, uncovered
@@ -119,16 +121,25 @@ def _judged_one(model: Model, row: Floats) -> tuple[Floats, Verdicts]:
         judged = judge_case(case)
     except (InputError, ModelError):
         return margin, verdict
-    left = list(judged)
-    for i, title in enumerate(model.titles):
-        outcome = next((j.outcome for j in left if j.outcome.title == title), None)
+    for i, outcome in enumerate(aligned(judged, model.titles)):
         if outcome is None:
             continue
-        left.remove(next(j for j in left if j.outcome is outcome))
         verdict[i] = _CODES[outcome.verdict]
         if outcome.margin is not None:
             margin[i] = outcome.margin
     return margin, verdict
+
+
+def aligned(judged: Iterable[Judged], titles: Iterable[str]) -> list[Outcome | None]:
+    """Return the outcome of each title, None where there is none; equal titles in their order."""
+    left = [one.outcome for one in judged]
+    out: list[Outcome | None] = []
+    for title in titles:
+        found = next((outcome for outcome in left if outcome.title == title), None)
+        if found is not None:
+            left = [outcome for outcome in left if outcome is not found]
+        out.append(found)
+    return out
 
 
 SCHEDULER, WORKERS = "REPORTGEN_SCHEDULER", "REPORTGEN_WORKERS"

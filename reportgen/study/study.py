@@ -15,7 +15,7 @@ from reportgen.assess.model import Assessment, Finding, Judged, SecondComputatio
 from reportgen.case import from_resolved
 from reportgen.criteria.shares import Interval, failing_share, share_interval
 from reportgen.criteria.sources import project_source
-from reportgen.study.evaluate import Mapper, Model, Outcomes
+from reportgen.study.evaluate import Mapper, Model, Outcomes, aligned
 from reportgen.study.indices import Sensitivity, sensitivity
 from reportgen.study.inputs import Varied, case_with, values_of, varied_of
 from reportgen.study.one_mass import FAILS, OPEN
@@ -276,9 +276,8 @@ def _margin_findings(
         if one is None:
             continue
         case = from_resolved(case_with(model.resolved, model.places, list(one.values)))
-        again = next(
-            (j.outcome.margin for j in assess_case(case).judged if j.outcome.title == title), None
-        )
+        same = aligned(assess_case(case).judged, model.titles)[number]
+        again = None if same is None else same.margin
         found.append(
             _margin(
                 f"worst-margin-C{number + 1}",
