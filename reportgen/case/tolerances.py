@@ -13,7 +13,7 @@ from reportgen.case.criteria import Limit, Share
 from reportgen.case.given import Given
 from reportgen.case.inner import CaseFile, CaseOf
 
-_LEAST, _MOST = 64, 1 << 18
+_LEAST, _MOST = 16, 1 << 18
 
 
 class Sampling(Section):

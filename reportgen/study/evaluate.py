@@ -18,10 +18,12 @@ import numpy as np
 
 from reportgen.assess.by_template import assess_case, judge_case
 from reportgen.assess.model import Judged
-from reportgen.case import from_resolved
+from reportgen.case import Case, from_resolved
 from reportgen.case.changes import Place
+from reportgen.case.lateral import LateralCase
 from reportgen.criteria import Outcome
 from reportgen.errors import InputError, ModelError
+from reportgen.study import stations
 from reportgen.study.inputs import case_with
 from reportgen.study.one_mass import FAILS, MEETS, OPEN, Many, Verdicts, uncovered
 from reportgen.study.sampling import Floats
@@ -71,8 +73,7 @@ class Model:
     @classmethod
     def of(cls, resolved: Mapping[str, Any], places: Sequence[Place]) -> Model:
         """Judge the case as it stands, and take its criteria from that."""
-        calc = assess_case(from_resolved(resolved))
-        titles = tuple(judged.outcome.title for judged in calc.judged)
+        titles = tuple(one.outcome.title for one in judged_of(from_resolved(resolved)))
         return cls(resolved, tuple(places), titles)
 
     @property
@@ -99,6 +100,27 @@ class Model:
         )
 
 
+def judged_of(case: Case) -> tuple[Judged, ...]:
+    """Judge one case as a study does: leanly where it is by stations, else as its report does.
+
+    Raises
+    ------
+    ModelError
+        If the methods do not cover the case's values.
+    """
+    if isinstance(case, LateralCase):
+        return stations.judge(case)
+    return judge_case(case)
+
+
+def checked_of(case: Case) -> tuple[tuple[Judged, ...], str, float, str]:
+    """Judge one case a second time: outcomes, how, tolerance as a share of a limit, and why."""
+    if isinstance(case, LateralCase):
+        finer = stations.judge(case, 4 * stations.SPEEDS)
+        return finer, "response at four times as many speeds", 1e-3, "peaks between speeds"
+    return assess_case(case).judged, "whole assessment of that rotor", 1e-5, "passages to 10⁻⁶"
+
+
 def judged_piece(model: Model, values: Floats) -> Outcomes:
     """Judge one piece of the samples, shape (samples, places)."""
     if model.at_once:
@@ -118,7 +140,7 @@ def _judged_one(model: Model, row: Floats) -> tuple[Floats, Verdicts]:
     verdict = np.full(len(model.titles), OPEN, np.int8)
     try:
         case = from_resolved(case_with(model.resolved, model.places, list(row)))
-        judged = judge_case(case)
+        judged = judged_of(case)
     except (InputError, ModelError):
         return margin, verdict
     for i, outcome in enumerate(aligned(judged, model.titles)):

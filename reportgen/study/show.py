@@ -53,7 +53,7 @@ def studied(sheet: Sheet, study: Study) -> None:
                 sheet.show(j.outcome.margin, "percent", 3),
                 j.outcome.verdict,
             ]
-            for number, j in enumerate(study.nominal.judged, 1)
+            for number, j in enumerate(study.nominal, 1)
         ],
     )
 
@@ -109,7 +109,7 @@ def _distributions(varied: tuple[Varied, ...]) -> str:
 def sampling(sheet: Sheet, study: Study) -> None:
     """Show how the samples are drawn, with the seed that gives the same ones again."""
     plan = sheet.case.sampling
-    how = "by closed forms on arrays" if study.model.at_once else "each by its own assessment"
+    how = "by closed forms on arrays" if study.model.at_once else "one by one"
     sheet.table(
         "sampling",
         "How rotors are drawn",
@@ -227,7 +227,7 @@ def _histogram(sheet: Sheet, study: Study, chosen: list[int]) -> None:
                     linewidth=0.6,
                 )
         ax.axvline(0.0, color=INK, linewidth=1.0)
-        stated = study.nominal.judged[i].outcome.margin
+        stated = study.nominal[i].outcome.margin
         if stated is not None:
             ax.axvline(100 * stated, color=GREY, linewidth=1.0, linestyle=(0, (4, 2)))
         ax.set_title(f"C{i + 1}", loc="left")

@@ -9,19 +9,26 @@ from typing import TYPE_CHECKING, Any, cast
 
 import numpy as np
 
-from reportgen.assess.by_template import assess_case
 from reportgen.assess.cautions import CAUTIONS, NOT_ASSESSED, Caution
 from reportgen.assess.model import Assessment, Finding, Judged, SecondComputation
 from reportgen.case import from_resolved
 from reportgen.criteria.shares import Interval, failing_share, share_interval
 from reportgen.criteria.sources import project_source
-from reportgen.study.evaluate import Mapper, Model, Outcomes, aligned
+from reportgen.study.evaluate import (
+    Mapper,
+    Model,
+    Outcomes,
+    aligned,
+    checked_of,
+    judged_of,
+)
 from reportgen.study.indices import Sensitivity, sensitivity
 from reportgen.study.inputs import Varied, case_with, values_of, varied_of
 from reportgen.study.one_mass import FAILS, OPEN
 from reportgen.study.sampling import Floats, design
 
 if TYPE_CHECKING:
+    from reportgen.case import Case
     from reportgen.case.tolerances import StudyCase
 
 _DISTRIBUTIONS = Caution(
@@ -86,7 +93,7 @@ class Study(Assessment):
     """
 
     model: Model
-    nominal: Assessment
+    nominal: tuple[Judged, ...]
     varied: tuple[Varied, ...]
     values: Floats
     outcomes: Outcomes
@@ -139,17 +146,17 @@ def run_study(case: StudyCase, mapper: Mapper | None = None) -> Study:
     )
     any_share = _share("any criterion", _any(both), confidence, plan.interval)
     worst = tuple(_worst(both.margin[i], values) for i in range(len(model.titles)))
-    nominal = assess_case(inner)
+    nominal = judged_of(inner)
     again = _independent(case, model, varied, mapper)
     findings = (
         *_share_findings(shares, any_share, again),
-        *_margin_findings(model, nominal, worst, varied),
+        *_margin_findings(model, inner, worst, varied),
     )
     return Study(
         findings=findings,
         judged=_judged(case, (*shares, any_share), confidence),
         cautions=(_DISTRIBUTIONS, *CAUTIONS),
-        not_assessed=nominal.not_assessed or NOT_ASSESSED,
+        not_assessed=NOT_ASSESSED,
         model=model,
         nominal=nominal,
         varied=varied,
@@ -251,71 +258,72 @@ def _apart(share: Share, failing: int, assessed: int) -> float:
 
 
 def _margin_findings(
-    model: Model,
-    nominal: Assessment,
-    worst: tuple[Worst | None, ...],
-    varied: tuple[Varied, ...],
+    model: Model, inner: Case, worst: tuple[Worst | None, ...], varied: tuple[Varied, ...]
 ) -> list[Finding]:
-    """Return nominal and worst margins, each a second time by the case's whole assessment."""
-    middle = model.outcomes(np.array([[v.value for v in varied]]))
+    """Return nominal and worst margins, each with its second computation."""
+    middle = model.outcomes(np.array([[v.value for v in varied]])).margin[:, 0]
+    stated = _Checked(model, inner)
     found = []
     for number, title in enumerate(model.titles):
-        outcome = nominal.judged[number].outcome
-        value = float(middle.margin[number, 0])
+        value = float(middle[number])
         found.append(
-            _margin(
+            stated.margin(
+                number,
                 f"nominal-margin-C{number + 1}",
                 f"Margin as stated, without tolerances: {title}",
                 f"M_{{{number + 1}}}",
                 None if math.isnan(value) else value,
-                outcome.margin,
-                headline=False,
             )
         )
         one = worst[number]
-        if one is None:
-            continue
-        case = from_resolved(case_with(model.resolved, model.places, list(one.values)))
-        same = aligned(assess_case(case).judged, model.titles)[number]
-        again = None if same is None else same.margin
-        found.append(
-            _margin(
-                f"worst-margin-C{number + 1}",
-                f"Least margin of the sampled rotors: {title}",
-                rf"M_{{{number + 1},\min}}",
-                one.margin,
-                again,
-                headline=True,
+        if one is not None:
+            case = from_resolved(case_with(model.resolved, model.places, list(one.values)))
+            found.append(
+                _Checked(model, case).margin(
+                    number,
+                    f"worst-margin-C{number + 1}",
+                    f"Least margin of the sampled rotors: {title}",
+                    rf"M_{{{number + 1},\min}}",
+                    one.margin,
+                )
             )
-        )
     return found
 
 
-def _margin(
-    name: str, title: str, symbol: str, value: float | None, again: float | None, headline: bool
-) -> Finding:
-    second = None
-    if value is not None:
-        # a margin is a difference of near numbers: compare as shares of the limit
-        tolerance = 1e-5 / max(abs(value), 1e-12)
-        second = SecondComputation(
-            "whole assessment of that rotor",
-            math.nan if again is None else again,
-            tolerance,
-            "10⁻⁵ of the limit: passages",
+class _Checked:
+    """Margins of one case, computed a second time."""
+
+    def __init__(self, model: Model, case: Case) -> None:
+        judged, self.how, self.tolerance, self.because = checked_of(case)
+        self.outcomes = aligned(judged, model.titles)
+
+    def margin(
+        self, number: int, name: str, title: str, symbol: str, value: float | None
+    ) -> Finding:
+        """Return the finding of one margin; what is worst stands on page one."""
+        second = None
+        if value is not None:
+            outcome = self.outcomes[number]
+            again = None if outcome is None else outcome.margin
+            # a margin is a difference of near numbers: compare as shares of the limit
+            second = SecondComputation(
+                self.how,
+                math.nan if again is None else again,
+                self.tolerance / max(abs(value), 1e-12),
+                f"{self.tolerance:g} of the limit: {self.because}",
+            )
+        return Finding(
+            id=name,
+            title=title,
+            symbol=symbol,
+            value=value,
+            quantity="percent",
+            method="closed forms on arrays, or each sample judged",
+            where="margins",
+            note="" if value is not None else "there is no margin",
+            headline=name.startswith("worst"),
+            second=second,
         )
-    return Finding(
-        id=name,
-        title=title,
-        symbol=symbol,
-        value=value,
-        quantity="percent",
-        method="closed forms on arrays, or the assessment of each sample",
-        where="margins",
-        note="" if value is not None else "there is no margin",
-        headline=headline,
-        second=second,
-    )
 
 
 def _judged(case: StudyCase, shares: tuple[Share, ...], confidence: float) -> tuple[Judged, ...]:

@@ -23,6 +23,8 @@ from reportgen.study.sampling import design
 
 CASES = Path(__file__).parents[2] / "cases"
 SAMPLES, LOOPED = 100_000, 300
+STATIONS = "../tests/study/rotor-by-stations.yaml"
+RATES: dict[int, float] = {}
 
 
 def drawn(name: str, samples: int) -> tuple[Model, np.ndarray]:
@@ -83,21 +85,17 @@ def processes(count):
 
 
 @pytest.mark.parametrize("workers", [1, 2])
-def test_one_by_one_on_processes(benchmark, workers, capsys, tmp_path):
-    """A model whose samples are judged one by one; each worker is warm before it is timed."""
-    text = (CASES / "booster-fan.yaml").read_text()
-    support = "  damping:\n    logarithmic decrement"
-    assert support in text
-    case = tmp_path / "fan.yaml"
-    case.write_text(text.replace(support, "  support: {stiffness: 40 kN/mm}\n" + support))
-    inner = read_case(case)
-    varied = varied_of(inner)
-    model = Model.of(inner.resolved(), [v.place for v in varied])
-    values = values_of(varied, design("random", 256, len(varied), 1).A)
+def test_stations_on_processes(benchmark, workers, capsys):
+    """The station model on one and two processes, each warm before it is timed."""
+    model, values = drawn(STATIONS, 512)
     assert not model.at_once
     with processes(workers) as pool:
         model.outcomes(values[:64], pool.map)
         benchmark.pedantic(lambda: model.outcomes(values, pool.map), rounds=3)
     rate = len(values) / benchmark.stats.stats.median
+    RATES[workers] = rate
+    words = f"stations, {workers} workers: {rate:.0f} samples/s"
+    if len(RATES) == 2:
+        words += f"; efficiency on two {RATES[2] / (2 * RATES[1]):.0%}"
     with capsys.disabled():
-        print(f"\none by one, {workers} workers: {rate:.0f} samples/s")
+        print(f"\n{words}")

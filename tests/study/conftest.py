@@ -76,6 +76,12 @@ def study_case(tmp_path: Path) -> Callable[..., Any]:
 
 
 @pytest.fixture
+def rotor_by_stations() -> str:
+    """Give a small rotor by stations with tolerances."""
+    return (Path(__file__).parent / "rotor-by-stations.yaml").read_text()
+
+
+@pytest.fixture
 def passing_fan() -> str:
     """Give a fan with passages; these have no closed form with internal damping."""
     text = FAN.replace("  internal damping: {value: 600 N s/m, tolerance: 20 %}\n", "")

@@ -111,7 +111,7 @@ def test_what_has_no_closed_form_is_judged_one_by_one(old: str, new: str, study_
 
 
 def test_the_numbers_are_the_same_on_one_core_two_cores_and_a_cluster(
-    study_case: Any, passing_fan: str, monkeypatch: pytest.MonkeyPatch
+    study_case: Any, passing_fan: str, rotor_by_stations: str, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """Spread the same pieces over processes and over a real Dask cluster on loopback."""
     from distributed import Client, LocalCluster
@@ -119,7 +119,7 @@ def test_the_numbers_are_the_same_on_one_core_two_cores_and_a_cluster(
     monkeypatch.setattr(evaluate, "AT_ONCE", 64)  # several pieces of each kind
     cases = [
         study_case(fan=passing_fan),
-        study_case(("  damping: {ratio", "  support: {stiffness: 4e7 N/m}\n  damping: {ratio")),
+        study_case(fan=rotor_by_stations),
     ]
     cases = [(c, *model_and_values(c, n)) for c, n in zip(cases, (256, 16), strict=True)]
     here = [model.outcomes(values) for _, model, values in cases]
