@@ -30,7 +30,7 @@ FASTEST_COAST_DOWN = 0.05
 """Range of the map: faster than this the rotor crosses the critical within a fraction of a turn."""
 
 _BLOCK = 256
-_COARSE, _FINE, _ROUNDS = 48, 7, 3
+_COARSE, _FINE, _ROUNDS = 30, 7, 4
 
 
 def peak_map(
