@@ -18,8 +18,12 @@ if TYPE_CHECKING:
     from reportgen.assess.model import Assessment, Judged
     from reportgen.case import Case
 
-_HOMES = {"one-mass-whirl": "reportgen.assess.one_mass"}
-"""The module whose ``assess`` calculates a case of the template."""
+_HOMES = {
+    "one-mass-whirl": "reportgen.assess.one_mass",
+    "lateral-review": "reportgen.assess.lateral",
+    "transient-passage": "reportgen.assess.transient",
+}
+"""The module whose ``assess`` calculates a case of the template, where there is one."""
 
 
 def assess_case(case: Case) -> Assessment:

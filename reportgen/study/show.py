@@ -10,6 +10,7 @@ from reportgen.sheet.blocks import Inline
 from reportgen.sheet.figures import BLUE, GREY, INK, RED, new
 from reportgen.study.inputs import Varied
 from reportgen.study.sampling import WIDTH
+from reportgen.study.stations import SPEEDS
 from reportgen.study.study import worst_settings
 
 if TYPE_CHECKING:
@@ -126,6 +127,13 @@ def sampling(sheet: Sheet, study: Study) -> None:
             ],
         ],
     )
+    if sheet.case.of.case.template == "lateral-review":
+        sheet.paragraph(
+            f"Each rotor is judged by its whirl at the probes (at the bearings where there are "
+            f"none) at {SPEEDS} even speeds, by the peaks of that response and by its damped "
+            "modes at the maximum continuous speed. Limits on bearing load, shaft stress, balance "
+            "and a project's own results are not judged in a study."
+        )
     if plan.method != "random":
         sheet.paragraph(
             "The interval is that of independent samples. Points that fill the tolerances evenly "
@@ -288,7 +296,8 @@ def drivers(sheet: Sheet, study: Study) -> None:
 
 
 def _index(value: float) -> str:
-    return f"{value:.3f}".replace("-", "−")
+    words = f"{value:.3f}".replace("-", "−")
+    return "0.000" if words == "−0.000" else words
 
 
 def _between(interval: Any, i: int) -> str:
