@@ -305,7 +305,7 @@ def _compare(arguments: argparse.Namespace) -> int:
         found = told.as_dict(sides, calc)
         _print_json(found if package is None else {**found, "package": str(package)})
     else:
-        from reportgen.sheet.comparison import conclusion
+        from reportgen.sheet.comparison_words import conclusion
 
         for caption, titles, rows in told.tables(calc):
             _print_table(caption, titles, rows)

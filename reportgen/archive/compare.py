@@ -78,6 +78,8 @@ def load_side(path: Path, scratch: Path) -> Side:
         write_files(scratch, {name: content})
     case = read_case(scratch / "case.yaml")
     kept = {"case.yaml": files[CASE], **side_files(case)}
+    if case.template.endswith(".ipynb"):  # of the user's own: it stands beside the case
+        kept[case.template] = files[PAYLOAD + "template.ipynb"]
     results = files[PAYLOAD + _RESULTS]
     return Side(
         case,

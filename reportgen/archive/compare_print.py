@@ -7,7 +7,7 @@ from typing import Any
 from reportgen.archive.compare import Side
 from reportgen.assess.comparison import Comparison, check_archived
 from reportgen.case.changes import is_given
-from reportgen.sheet import comparison as words
+from reportgen.sheet import comparison_words as words
 from reportgen.units import show
 
 Rows = list[tuple[str, ...]]

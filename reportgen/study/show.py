@@ -7,9 +7,9 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from reportgen.sheet.blocks import Inline
-from reportgen.sheet.figures import BLUE, GREY, INK, RED, new
 from reportgen.study.inputs import Varied
 from reportgen.study.sampling import WIDTH
+from reportgen.study.show_margins import BINS, histogram, varies
 from reportgen.study.stations import SPEEDS
 from reportgen.study.study import worst_settings
 
@@ -23,7 +23,6 @@ _METHODS = {
     "random": "independent random points",
 }
 _INTERVALS = {"clopper-pearson": "Clopper and Pearson", "wilson": "Wilson"}
-_BINS = 40
 
 
 def studied(sheet: Sheet, study: Study) -> None:
@@ -202,55 +201,9 @@ def margins(sheet: Sheet, study: Study) -> None:
         rows,
         note="A share of the rotors as given in the heading has no more margin than this.",
     )
-    varying = [i for i in range(len(study.titles)) if _varies(study.outcomes.margin[i])]
+    varying = [i for i in range(len(study.titles)) if varies(study.outcomes.margin[i])]
     if varying:
-        _histogram(sheet, study, varying[:4])
-
-
-def _varies(row: Any) -> bool:
-    known = row[~np.isnan(row)]
-    return bool(known.size) and float(np.ptp(known)) > 1e-9 * float(np.abs(known).max())
-
-
-def _histogram(sheet: Sheet, study: Study, chosen: list[int]) -> None:
-    rows = (len(chosen) + 1) // 2
-    columns = min(2, len(chosen))
-    figure, axes = new(rows, columns, height=0.35 + 1.85 * rows, squeeze=False)
-    words = []
-    for ax, i in zip(axes.flat, chosen, strict=False):
-        row = study.outcomes.margin[i]
-        known = 100 * row[~np.isnan(row)]
-        edges = np.histogram_bin_edges(known, _BINS)
-        for keep, color, hatch in ((known >= 0, BLUE, ""), (known < 0, RED, "////")):
-            counts, _ = np.histogram(known[keep], edges)
-            if counts.any():
-                ax.bar(
-                    edges[:-1],
-                    100 * counts / row.size,
-                    np.diff(edges),
-                    align="edge",
-                    color=color if not hatch else "white",
-                    edgecolor=color,
-                    hatch=hatch,
-                    linewidth=0.6,
-                )
-        ax.axvline(0.0, color=INK, linewidth=1.0)
-        stated = study.nominal[i].outcome.margin
-        if stated is not None:
-            ax.axvline(100 * stated, color=GREY, linewidth=1.0, linestyle=(0, (4, 2)))
-        ax.set_title(f"C{i + 1}", loc="left")
-        ax.set_xlabel("Margin (% of the limit)")
-        ax.set_ylabel("Rotors (%)")
-        words.append(f"C{i + 1} from {known.min():.3g} % to {known.max():.3g} %")
-    for ax in list(axes.flat)[len(chosen) :]:
-        ax.set_visible(False)
-    sheet.figure(
-        "histogram",
-        figure,
-        "Margins of the sampled rotors; hatched: the criterion is not met; dashed: as stated, "
-        "without tolerances",
-        f"Histograms of the margins: {'; '.join(words)}.",
-    )
+        histogram(sheet, study, varying[:4])
 
 
 def drivers(sheet: Sheet, study: Study) -> None:
@@ -418,9 +371,9 @@ def _counts(row: Any) -> dict[str, Any]:
     known = row[~np.isnan(row)]
     if not known.size:
         return {"edges": [], "rotors": []}
-    if not _varies(row):
+    if not varies(row):
         return {"edges": _digits([known.min(), known.max()]), "rotors": [int(known.size)]}
-    counts, edges = np.histogram(known, _BINS)
+    counts, edges = np.histogram(known, BINS)
     return {"edges": _digits(edges), "rotors": [int(n) for n in counts]}
 
 
