@@ -182,5 +182,5 @@ def _steady(side: OneMassSide, speeds: dict[str, float]) -> Steady:
         operating=largest_amplitude(rotor, operating, peak),
         unbalance=rotor.mass * rotor.eccentricity,
         mass=rotor.mass,
-        grade_speed=speeds.get("maximum continuous", rated),
+        grade_speed=side.grade_speed,
     )

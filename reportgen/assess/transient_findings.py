@@ -108,7 +108,7 @@ def _forces(run: TransientRun) -> tuple[Finding, ...]:
             method="motion times stiffness and damping of the path"
             if force.second
             else "motion of the record",
-            where=f"{run.id}-forces",
+            where="forces",
             headline=force is largest and force.second is not None,
             second=force.second,
         )
@@ -189,7 +189,7 @@ def _energy(run: TransientRun) -> tuple[Finding, ...]:
             value=audit.dissipated,
             quantity="energy",
             method="integrated with the motion",
-            where=f"{run.id}-energy",
+            where="energy",
             headline=False,
             second=second,
         ),

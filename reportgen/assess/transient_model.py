@@ -234,7 +234,7 @@ class TransientAssessment(Assessment):
 
 
 _NUMBER = r"-?\d[\d.]*(?:e[+-]?\d+)?"
-_SPEEDS = re.compile(rf"({_NUMBER}(?:(?:,| and| to) {_NUMBER})*) rad/s\b(?!²)")
+_SPEEDS = re.compile(rf"({_NUMBER}(?:(?:,| and| to) {_NUMBER})*) rad/s(²|(?!\w))")
 
 
 def in_rpm(text: str) -> str:
@@ -243,4 +243,8 @@ def in_rpm(text: str) -> str:
     def turned(number: re.Match[str]) -> str:
         return f"{float(number[0]) * 30.0 / math.pi:.5g}"
 
-    return _SPEEDS.sub(lambda found: f"{re.sub(_NUMBER, turned, found[1])} r/min", text)
+    def spoken(found: re.Match[str]) -> str:
+        unit = "(r/min)/s" if found[2] else "r/min"
+        return f"{re.sub(_NUMBER, turned, found[1])} {unit}"
+
+    return _SPEEDS.sub(spoken, text)

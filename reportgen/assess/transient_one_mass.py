@@ -9,7 +9,7 @@ import numpy as np
 
 from reportgen.assess.model import SecondComputation
 from reportgen.assess.transient_force import largest_force, with_newton
-from reportgen.assess.transient_model import TransientRun, Watched
+from reportgen.assess.transient_model import TransientRun, Watched, in_rpm
 from reportgen.assess.transient_picture import (
     envelope,
     orbit_span,
@@ -99,7 +99,7 @@ def _prescribed(side: OneMassSide, given: PassageProgramme, run_id: str) -> Tran
         outcome="reached",
         critical=side.critical,
         crossed=found.crossed,
-        reason=found.reason,
+        reason=in_rpm(found.reason),
         acceleration=acceleration,
         turns=float(ran.angle[-1] - ran.angle[0]) / (2.0 * math.pi),
         watched=(

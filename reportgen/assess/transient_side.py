@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, cast
 
 import numpy as np
 
-from reportgen.assess.one_mass_rotor import rotor_of
+from reportgen.assess.one_mass_rotor import reference_speed_of, rotor_of
 from reportgen.assess.transient_map import PeakMap, map_of
 from reportgen.assess.transient_model import Contact
 from reportgen.assess.transient_picture import steady_grid
@@ -27,7 +27,7 @@ class OneMassSide:
     """The rotor of a case, and what of the case its passages need. SI.
 
     ``room_share`` is the share of a clearance that may be used: that of the case's criterion,
-    1 where it states none.
+    1 where it states none; ``grade_speed`` the speed that a balance quality grade applies at.
     """
 
     rotor: onemass.OneMassRotor
@@ -36,6 +36,7 @@ class OneMassSide:
     limit: float | None
     clearances: tuple[tuple[str, float, float], ...]
     room_share: float
+    grade_speed: float
 
     @classmethod
     def of(cls, case: PassageCase) -> OneMassSide:
@@ -52,6 +53,7 @@ class OneMassSide:
                 (c.name, float(c.clearance), float(c.runout or 0.0)) for c in case.clearances
             ),
             room_share=min(shares, default=1.0),
+            grade_speed=reference_speed_of(cast("OneMassCase", case)),
         )
 
     def contacts(self, peak: float) -> tuple[Contact, ...]:

@@ -10,7 +10,13 @@ import numpy as np
 from reportgen.assess import transient_second as second
 from reportgen.assess.model import SecondComputation
 from reportgen.assess.transient_force import largest_force, with_newton
-from reportgen.assess.transient_model import DriveFindings, ForcePeak, TransientRun, Watched
+from reportgen.assess.transient_model import (
+    DriveFindings,
+    ForcePeak,
+    TransientRun,
+    Watched,
+    in_rpm,
+)
 from reportgen.assess.transient_picture import envelope, orbit_span, time_above, waterfall
 from reportgen.errors import ModelError
 from reportgen.rotor.transient import (
@@ -75,7 +81,7 @@ def torque_passage(side: OneMassSide, given: PassageProgramme, run_id: str) -> T
         outcome=run.outcome,
         critical=run.critical_speed,
         crossed=run.crossed,
-        reason=run.reason,
+        reason=in_rpm(run.reason),
         acceleration=acceleration,
         turns=run.turns,
         watched=(

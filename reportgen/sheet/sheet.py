@@ -154,8 +154,12 @@ class Sheet:
         asked: Inline,
         conclusion: Inline = "",
         series: Mapping[str, Any] | None = None,
+        lead: Sequence[Inline] = (),
     ) -> None:
-        """Close the sheet: everything that page one and ``results.json`` are made from."""
+        """Close the sheet: everything that page one and ``results.json`` are made from.
+
+        ``lead`` is said before the verdicts, where there is something that they do not say.
+        """
         holds = [cast("Hold", hold) for hold in self.case.holds()]
         for finding in assessment.disagreements():
             holds.append(
@@ -174,7 +178,7 @@ class Sheet:
             "units": self.system,
             "machine": machine_words(self.case),
             "asked": asked,
-            "conclusion": conclusion or conclusion_of(criteria, len(holds)),
+            "conclusion": conclusion or [*lead, *conclusion_of(criteria, len(holds))],
             "results": [self._result(f) for f in assessment.findings if f.headline],
             "criteria": criteria,
             "holds": holds,
