@@ -179,7 +179,7 @@ def _energy(run: TransientRun) -> tuple[Finding, ...]:
             "sum of damping times velocity squared over the other equations' record",
             run.dissipated_second,
             1e-4,
-            "48 samples a turn; two integrations at 1e-9 a step",
+            "48 samples a turn; integrated at 1e-8 a step",
         )
     return (
         Finding(

@@ -79,8 +79,8 @@ def rest_record(
         start,
         method="LSODA",
         t_eval=times,
-        rtol=1e-9,
-        atol=1e-9 * _scale(rotor, start.size),
+        rtol=1e-8,
+        atol=1e-8 * _scale(rotor, start.size),
     )
     y = found.y
     return RestRecord(

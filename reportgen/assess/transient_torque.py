@@ -36,7 +36,7 @@ if TYPE_CHECKING:
     from reportgen.case.passage import PassageProgramme
 
 _MOST_TURNS = 20_000
-_SLACK = 5e-3  # of the least torque's second computation
+_SLACK = 1e-2  # width of the least torque's second bracket, relative
 
 
 def torque_passage(side: OneMassSide, given: PassageProgramme, run_id: str) -> TransientRun:
@@ -200,7 +200,7 @@ def _second_peak(record: second.RestRecord | None) -> SecondComputation | None:
         "Newton's law in the frame at rest, multistep integration",
         second.highest(record)[0],
         1e-5,
-        "both integrate at 1e-9 a step",
+        "integrated at 1e-8 a step over many turns",
     )
 
 
@@ -240,7 +240,7 @@ def _margin(
         return None
     if side.rotor.damping_ratio == 0.0:
         return None  # the steady whirl has no end: no torque is enough for a slow passage
-    return least_drive_torque(side.rotor, inertia, drive, load, end, start)
+    return least_drive_torque(side.rotor, inertia, drive, load, end, start, tolerance=2.5e-3)
 
 
 def _second_least(
@@ -258,8 +258,8 @@ def _second_least(
     def passes(factor: float) -> bool:
         return second.passes(rotor, inertia, _held(drive, load, factor), critical)
 
-    low = margin.least_factor * (1.0 - 2.0 * _SLACK)
-    high = margin.least_factor * (1.0 + 2.0 * _SLACK)
+    low = margin.least_factor * (1.0 - _SLACK)
+    high = margin.least_factor * (1.0 + _SLACK)
     if passes(low):
         high = low  # it disagrees, and the table says so
     elif not passes(high):
@@ -271,5 +271,5 @@ def _second_least(
         "Newton's law in the frame at rest, from 0.85 of the critical speed, bracketed",
         0.5 * (low + high),
         _SLACK,
-        "bracketed to 0.5 %",
+        "bracketed to 1 %",
     )

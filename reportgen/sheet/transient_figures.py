@@ -155,7 +155,7 @@ def waterfall_figure(sheet: Sheet, run: TransientRun) -> tuple[Any, str]:
     thin = max(1, frequency.size // 260)
     frequency, level = frequency[::thin], _thinned(level, thin)
     step = float(fall.time[1] - fall.time[0])
-    scale = 2.6 * step / float(level.max())
+    scale = 5.0 * step / float(level.max())
     for number, (time, line) in enumerate(zip(fall.time, level, strict=True)):
         height = time + scale * line
         ax.fill_between(frequency, time, height, color="white", zorder=2 * (99 - number))
@@ -177,7 +177,7 @@ def waterfall_figure(sheet: Sheet, run: TransientRun) -> tuple[Any, str]:
     )  # fmt: skip
     most = float(level.max())
     ax.set_xlim(0, float(frequency[-1]))
-    ax.set_ylim(float(fall.time[0]) - step, float(fall.time[-1]) + 3.4 * step)
+    ax.set_ylim(float(fall.time[0]) - step, float(fall.time[-1]) + 5.6 * step)
     ax.set_xlabel(f"Frequency ({sheet.unit('frequency')})")
     ax.set_ylabel("Time (s)")
     ax.grid(visible=False)
@@ -244,6 +244,7 @@ def orbits_figure(sheet: Sheet, calc: TransientAssessment) -> tuple[Any, str]:
         ax.plot(x[-1:], y[-1:], "s", color=ORANGE, markersize=4)
         ax.set_title(_folded(run.name), fontsize=8, loc="left")
         ax.set_aspect("equal", adjustable="datalim")
+        ax.locator_params(nbins=4)
         ax.set_xlabel(f"x, horizontal ({unit})")
         words.append(
             f"{run.name}: {_sense(run)}, up to "

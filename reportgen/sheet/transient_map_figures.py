@@ -79,6 +79,7 @@ def _curves(sheet: Sheet, ax: Any, found: PeakMap) -> None:
                 "room in the closest clearance", xy=(1.0, room),
                 xycoords=("axes fraction", "data"), xytext=(-2, 2), textcoords="offset points",
                 fontsize=_SMALL, color=RED, ha="right",
+                bbox={"facecolor": "white", "edgecolor": "none", "pad": 0.6, "alpha": 0.85},
             )  # fmt: skip
     ax.set_xlabel(f"Acceleration, size ({sheet.unit('acceleration_speed')})")
     ax.set_ylabel(f"Peak of the passage, 0-peak ({sheet.unit('displacement')})")
@@ -107,7 +108,9 @@ def _contours(sheet: Sheet, ax: Any, found: PeakMap) -> None:
         xytext=(5, 5), textcoords="offset points", fontsize=_SMALL, color=INK,
     )  # fmt: skip
     ax.set_xscale("log")
-    ax.set_title(f"lines of equal peak ({sheet.unit('displacement')})", fontsize=8, loc="left")
+    red = "; red: room in clearance" if found.room is not None else ""
+    title = f"lines of equal peak ({sheet.unit('displacement')}){red}"
+    ax.set_title(title, fontsize=8, loc="left")
     ax.set_xlabel(f"Acceleration, size ({sheet.unit('acceleration_speed')})")
     ax.set_ylabel("Damping ratio")
 
