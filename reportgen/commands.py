@@ -306,10 +306,11 @@ def _compare(arguments: argparse.Namespace) -> int:
         _print_json(found if package is None else {**found, "package": str(package)})
     else:
         from reportgen.sheet.comparison_words import conclusion
+        from reportgen.sheet.lines import plain
 
         for caption, titles, rows in told.tables(calc):
             _print_table(caption, titles, rows)
-        print(conclusion(calc))
+        print(plain(conclusion(calc)).strip())
         if package is not None:
             print(f"package: {package}")
     return 3 if any(j.outcome.verdict == "does not meet" for j in calc.judged) else 0

@@ -8,6 +8,7 @@ from reportgen.archive.compare import Side
 from reportgen.assess.comparison import Comparison, check_archived
 from reportgen.case.changes import is_given
 from reportgen.sheet import comparison_words as words
+from reportgen.sheet.lines import plain
 from reportgen.units import show
 
 Rows = list[tuple[str, ...]]
@@ -78,7 +79,7 @@ def as_dict(sides: tuple[Side, Side], calc: Comparison) -> dict[str, Any]:
     return {
         "old": _side(sides[0]),
         "new": _side(sides[1]),
-        "conclusion": words.conclusion(calc),
+        "conclusion": plain(words.conclusion(calc)).strip(),
         "inputs": [
             {"path": c.path, "old": c.before, "new": c.after, "counts": c.counts}
             for c in calc.changes

@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING, Any
 from reportgen import units
 from reportgen.case.base import walk
 from reportgen.case.changes import Change, is_given, is_table
+from reportgen.sheet.blocks import Inline
 
 if TYPE_CHECKING:
     from reportgen.assess.comparison import Comparison, Driver, Quantity
@@ -79,25 +80,29 @@ def driver_title(driver: Driver, titles: dict[str, str]) -> str:
     return f"{driver.path} ({len(driver.changes)} changes together)"
 
 
-def conclusion(calc: Comparison) -> str:
+def conclusion(calc: Comparison) -> list[Inline]:
     """Return in a few sentences what changed, what moved, what flipped and what drives it."""
     inputs = sum(change.counts for change in calc.changes)
-    parts = [
-        f"From {_names(calc)} {_count(inputs, 'input')} and "
-        f"{_count(len(calc.moved), 'result')} changed"
+    parts: list[Inline] = [
+        f"From {_names(calc)} {_count(inputs, 'input')} and {_count(len(calc.moved), 'result')} "
+        "changed. "
     ]
     titles = titles_of(calc)
     for one in calc.flipped:
         before, after = (verdict or "not stated" for verdict in one.verdicts)
-        words = f"{one.title} went from “{before}” to “{after}”"
+        parts += [
+            {"ref": "verdicts", "text": one.title},
+            f" went from “{before}” to “{after}”",
+        ]
         margin = next((q for q in calc.quantities if q.id == f"margin: {one.title}"), None)
         driver = calc.driver_of(margin) if margin is not None else None
         if driver is not None:
-            words += f", driven most by {driver_title(driver, titles).lower()}"
-        parts.append(words)
+            title = driver_title(driver, titles)
+            parts.append(f", driven most by {title[:1].lower()}{title[1:]}")
+        parts.append(". ")
     if not calc.flipped:
-        parts.append("No verdict changed" if calc.judgements else "No criterion is stated")
-    return ". ".join(parts) + "."
+        parts.append("No verdict changed." if calc.judgements else "No criterion is stated.")
+    return parts
 
 
 def _names(calc: Comparison) -> str:

@@ -9,7 +9,7 @@ import numpy as np
 from reportgen.sheet.blocks import Inline
 from reportgen.study.inputs import Varied
 from reportgen.study.sampling import WIDTH
-from reportgen.study.show_margins import BINS, histogram, varies
+from reportgen.study.show_margins import BINS, cumulative, histogram, varies
 from reportgen.study.stations import SPEEDS
 from reportgen.study.study import worst_settings
 
@@ -204,6 +204,7 @@ def margins(sheet: Sheet, study: Study) -> None:
     varying = [i for i in range(len(study.titles)) if varies(study.outcomes.margin[i])]
     if varying:
         histogram(sheet, study, varying[:4])
+        cumulative(sheet, study, varying[:4])
 
 
 def drivers(sheet: Sheet, study: Study) -> None:
@@ -293,35 +294,36 @@ def worst(sheet: Sheet, study: Study) -> None:
     )
 
 
-def conclusion(study: Study) -> str:
+def conclusion(sheet: Sheet, study: Study) -> list[Inline]:
     """Return in a few sentences how many fail, what decides it, and whether that is allowed."""
     total = study.any_share
-    parts = []
+    parts: list[Inline] = []
     if total.value is not None and total.interval is not None:
         low, high = (f"{100 * end:.3g} %" for end in total.interval)
-        parts.append(
-            f"{100 * total.value:.3g} % of the rotors that the tolerances allow fail at least "
-            f"one criterion ({low} to {high} at {100 * study.confidence:.4g} % confidence)"
-        )
-    at = study.worst_of()
+        parts += [
+            {"ref": "share-any", "text": sheet.show(total.value, "percent")},
+            " of the rotors that the tolerances allow fail at least one criterion "
+            f"({low} to {high} at {100 * study.confidence:.4g} % confidence). ",
+        ]
     failing = [i for i, share in enumerate(study.shares) if share.failing]
-    told = max(failing, key=lambda i: study.shares[i].failing) if failing else at
+    told = max(failing, key=lambda i: study.shares[i].failing) if failing else study.worst_of()
     if told is not None and (leading := study.sensitivities[told].leading) is not None:
         parts.append(
             f"The margin of the {_lower(study.titles[told])} is driven most by "
-            f"{study.varied[leading].title.lower()}"
+            f"{_lower(study.varied[leading].title)}. "
         )
     for verdict, what in (
         ("does not meet", "The share is above its limit for"),
         ("not assessed", "The samples do not decide the share for"),
     ):
-        names = [j.outcome.title for j in study.judged if j.outcome.verdict == verdict]
-        if names:
-            told_of = "; ".join(_lower(name.partition(": ")[2]) for name in names)
-            parts.append(f"{what}: {told_of}")
+        named = [j for j in study.judged if j.outcome.verdict == verdict]
+        for number, judged in enumerate(named):
+            title = judged.outcome.title.partition(": ")[2]
+            parts += [f"{what}: " if not number else "; ", {"ref": judged.where, "text": title}]
+        parts += [". "] if named else []
     if study.judged and all(j.outcome.verdict == "meets" for j in study.judged):
-        parts.append("Every stated share is kept")
-    return ". ".join(parts) + "."
+        parts.append("Every stated share is kept.")
+    return parts
 
 
 def _lower(text: str) -> str:

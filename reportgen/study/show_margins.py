@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from reportgen.sheet.figures import BLUE, GREY, INK, RED, new
+from reportgen.sheet.figures import BLUE, GREY, INK, LINES, RED, new
 
 if TYPE_CHECKING:
     from reportgen.sheet.sheet import Sheet
@@ -60,4 +60,30 @@ def histogram(sheet: Sheet, study: Study, chosen: list[int]) -> None:
         "Margins of the sampled rotors; hatched: the criterion is not met; dashed: as stated, "
         "without tolerances",
         f"Histograms of the margins: {'; '.join(words)}.",
+    )
+
+
+def cumulative(sheet: Sheet, study: Study, chosen: list[int]) -> None:
+    """Show which share of the rotors has no more than a margin; at zero it is the share failing."""
+    figure, ax = new(1, 1, height=2.8)
+    words = []
+    for style, i in zip(LINES, chosen, strict=False):
+        row = study.outcomes.margin[i]
+        known = np.sort(row[~np.isnan(row)])
+        share = 100 * np.arange(1, known.size + 1) / known.size
+        keep = np.unique(np.linspace(0, known.size - 1, 400).astype(int))
+        ax.plot(100 * known[keep], share[keep], label=f"C{i + 1}", **style)
+        middle = 100 * float(np.median(known))
+        words.append(f"half of the rotors have at most {middle:.3g} % against C{i + 1}")
+    ax.axvline(0.0, color=INK, linewidth=1.0)
+    ax.set_xlabel("Margin (% of the limit)")
+    ax.set_ylabel("Rotors with at most this (%)")
+    ax.set_ylim(0, 100)
+    ax.legend(fontsize=7.6)
+    sheet.figure(
+        "cumulative",
+        figure,
+        "Share of the sampled rotors with no more than a margin; where a curve meets the line at "
+        "zero, the share that fails is read",
+        f"Cumulative shares: {'; '.join(words)}.",
     )
