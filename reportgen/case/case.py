@@ -12,6 +12,7 @@ from reportgen.case.common import Assumption, Document, Machine
 from reportgen.case.criteria import Limit
 from reportgen.case.given import Given
 from reportgen.case.letterhead import HouseFile
+from reportgen.case.seen import Seen, SeenOf
 
 _CRITERION = re.compile(r"criteria\[(\d+)\]")
 _ASSUMED = re.compile(r"\bassum", re.IGNORECASE)
@@ -36,6 +37,9 @@ class Case(Section):
     units: Literal["si", "us"] = Field(examples=["si"])
     house: Annotated[str, HouseFile()] | None = None
     assumptions: tuple[Assumption, ...] = ()
+    see: tuple[Annotated[Seen, SeenOf()], ...] = Field(
+        (), title="finished calculations to see", examples=[["CAL-0452_A"]]
+    )
     _sides: dict[str, bytes] = PrivateAttr(default_factory=dict)
 
     def __eq__(self, other: object) -> bool:
@@ -79,6 +83,15 @@ class Case(Section):
             if assumption.status == "to be confirmed":
                 text = f"Assumption {assumption.id} to be confirmed: {assumption.text}"
                 found.append(("assumption", text))
+        found += [
+            (
+                "data",
+                f"Calculation {one.number} revision {one.revision}, which this one refers to: "
+                + ("its status is " + one.status if not one.holds else f"{one.holds} open holds"),
+            )
+            for one in self.see
+            if one.holds or one.status != "for issue"
+        ]
         return [
             {"id": f"H{number}", "text": text, "kind": kind}
             for number, (kind, text) in enumerate(found, 1)

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 from reportgen import units
 from reportgen.sheet.blocks import Inline
+from reportgen.sheet.seen import seen as seen
 
 if TYPE_CHECKING:
     from reportgen.assess.model import Assessment, Judged
