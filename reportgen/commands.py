@@ -281,16 +281,18 @@ def _compare(arguments: argparse.Namespace) -> int:
 
     from reportgen.archive import compare_print as told
     from reportgen.archive.compare import load_side, write_comparison
-    from reportgen.assess.comparison import compare
+    from reportgen.archive.compare_archived import compared
 
     with TemporaryDirectory(prefix="reportgen-") as scratch:
         folders = [Path(scratch) / name for name in ("a", "b", "made")]
         for folder in folders:
             folder.mkdir()
         sides = (load_side(arguments.old, folders[0]), load_side(arguments.new, folders[1]))
-        calc = compare(sides[0].case, sides[1].case)
+        calc, as_archived = compared(*sides)
         package = None
         if arguments.output is not None:
+            if as_archived:
+                raise InputError(Problem(as_archived, "leave -o out"))
             stated = {
                 key: getattr(arguments, key)
                 for key in ("number", "title", "revision", "status", "date")
@@ -299,7 +301,8 @@ def _compare(arguments: argparse.Namespace) -> int:
                 stated["prepared"] = {"name": arguments.prepared}
             case = write_comparison(*sides, folders[2], stated)
             package = _made(case, arguments).package
-    for note in told.archive_notes(sides, calc):
+    notes = [as_archived] if as_archived else told.archive_notes(sides, calc)
+    for note in notes:
         _note(note)
     if arguments.json:
         found = told.as_dict(sides, calc)

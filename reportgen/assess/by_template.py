@@ -26,6 +26,12 @@ _HOMES = {
 """The module whose ``assess`` calculates a case of the template, where there is one."""
 
 
+def has_assessment(template: str) -> bool:
+    """Tell whether cases of a template can be calculated without their notebook."""
+    home = _HOMES.get(template)
+    return home is not None and find_spec(home) is not None
+
+
 def assess_case(case: Case) -> Assessment:
     """Calculate and judge a case of any template that has an assessment.
 
@@ -34,10 +40,10 @@ def assess_case(case: Case) -> Assessment:
     ModelError
         If the methods do not cover the case's values, or the template has no assessment.
     """
-    home = _HOMES.get(case.template)
-    if home is None or find_spec(home) is None:
+    if not has_assessment(case.template):
         raise ModelError(f"a case of {case.template} cannot be calculated outside its report")
-    assess = cast("Callable[[Any], Assessment]", import_module(home).assess)
+    home = import_module(_HOMES[case.template])
+    assess = cast("Callable[[Any], Assessment]", home.assess)
     return assess(case)
 
 
@@ -51,9 +57,8 @@ def judge_case(case: Case) -> tuple[Judged, ...]:
     ModelError
         As :func:`assess_case`.
     """
-    home = _HOMES.get(case.template)
-    if home is not None and find_spec(home) is not None:
-        judge = getattr(import_module(home), "judge", None)
+    if has_assessment(case.template):
+        judge = getattr(import_module(_HOMES[case.template]), "judge", None)
         if judge is not None:
             return cast("tuple[Judged, ...]", judge(case))
     return assess_case(case).judged

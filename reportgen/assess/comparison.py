@@ -197,13 +197,20 @@ def compare(old_case: Case, new_case: Case) -> Comparison:
             f"a case of {old_case.template} cannot be compared with one of {new_case.template}"
         )
     old, new = assess_case(old_case), assess_case(new_case)
+    return compare_assessments(old_case, new_case, old, new)
+
+
+def compare_assessments(
+    old_case: Case, new_case: Case, old: Assessment, new: Assessment, *, apart: bool = True
+) -> Comparison:
+    """Compare two assessments; ``apart`` says whether to compute what tells inputs apart."""
     found = changes(old_case.resolved(), new_case.resolved())
     before, after = _numbers(old), _numbers(new)
     quantities = tuple(
         replace(after.get(key) or before[key], old=_value(before, key), new=_value(after, key))
         for key in dict.fromkeys([*after, *before])
     )
-    drivers = tuple(_drivers(old_case, new_case, found, before, after))
+    drivers = tuple(_drivers(old_case, new_case, found, before, after)) if apart else ()
     return Comparison(
         # where a finding is computed is told by the new revision's own report
         findings=tuple(replace(f, where="moved") for f in new.findings),

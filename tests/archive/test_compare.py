@@ -203,6 +203,34 @@ def test_what_cannot_be_compared_is_refused(
         assert done.stdout == ""
 
 
+def test_packages_that_cannot_be_computed_again_are_compared_as_archived(
+    run_demo: Any, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    from reportgen.archive import compare_archived
+
+    payload = read_payload(run_demo("booster-fan").package)
+    results = json.loads(payload["results.json"])
+    results["results"][0]["value"] *= 1.01
+    results["criteria"][0]["verdict"] = "meets"
+    older = write_package(
+        tmp_path, "CAL-0438_C", payload | {"results.json": json.dumps(results).encode()}, {}
+    )
+    sides = [load_side(older, tmp_path / "a"),
+             load_side(run_demo("booster-fan").package, tmp_path / "b")]  # fmt: skip
+    monkeypatch.setattr(compare_archived, "has_assessment", lambda _: False)
+    calc, note = compare_archived.compared(*sides)
+    assert "as they are" in note
+    assert [q.id for q in calc.moved] == ["critical-speed"]
+    assert calc.moved[0].relative == pytest.approx(1 / 1.01 - 1)
+    assert [j.verdicts for j in calc.flipped] == [("meets", "does not meet")]
+    assert calc.drivers == ()
+    tables = {caption: rows for caption, _, rows in compare_print.tables(calc)}
+    assert tables["results that moved"][0][-1] == "–"
+    case = load_side(run_demo("booster-fan").case, tmp_path / "c")
+    with pytest.raises(InputError, match="run both"):
+        compare_archived.compared(sides[0], case)
+
+
 def test_a_comparison_names_cases_of_one_template(tmp_path: Path, fan: Path) -> None:
     cases = fan.parent
     text = (cases / "booster-fan-changes.yaml").read_text()
