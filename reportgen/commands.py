@@ -288,6 +288,7 @@ def _compare(arguments: argparse.Namespace) -> int:
         for folder in folders:
             folder.mkdir()
         sides = (load_side(arguments.old, folders[0]), load_side(arguments.new, folders[1]))
+        _say("computing both, and each change apart")
         calc, as_archived = compared(*sides)
         package = None
         if arguments.output is not None:

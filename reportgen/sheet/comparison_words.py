@@ -13,6 +13,7 @@ from reportgen.sheet.blocks import Inline
 if TYPE_CHECKING:
     from reportgen.assess.comparison import Comparison, Driver, Quantity
 
+_MOST_TOLD = 4
 _CRITERION = re.compile(r"criteria\[(\d+)\]")
 
 
@@ -88,8 +89,9 @@ def conclusion(calc: Comparison) -> list[Inline]:
         "changed. "
     ]
     titles = titles_of(calc)
-    for one in calc.flipped:
-        before, after = (verdict or "not stated" for verdict in one.verdicts)
+    stated = [one for one in calc.flipped if all(one.verdicts)]
+    for one in stated[:_MOST_TOLD]:
+        before, after = one.verdicts
         parts += [
             {"ref": "verdicts", "text": one.title},
             f" went from “{before}” to “{after}”",
@@ -100,8 +102,15 @@ def conclusion(calc: Comparison) -> list[Inline]:
             title = driver_title(driver, titles)
             parts.append(f", driven most by {title[:1].lower()}{title[1:]}")
         parts.append(". ")
-    if not calc.flipped:
-        parts.append("No verdict changed." if calc.judgements else "No criterion is stated.")
+    if len(stated) > _MOST_TOLD:
+        parts.append(f"{len(stated) - _MOST_TOLD} more verdicts changed. ")
+    if not stated:
+        parts.append("No verdict changed. " if calc.judgements else "No criterion is stated. ")
+    for which, words in ((0, "new"), (1, "no longer stated")):
+        count = sum(1 for one in calc.flipped if not one.verdicts[which])
+        if count:
+            verb = "is" if count == 1 else "are"
+            parts.append(f"{count} criteri{'on' if count == 1 else 'a'} {verb} {words}. ")
     return parts
 
 
