@@ -78,6 +78,29 @@ def test_the_three_rotors_are_what_they_are_there_to_show(
         assert "does not meet" in demo.out
 
 
+def test_the_centrifuge_barely_passes_and_its_sibling_stalls(run_demo: Run) -> None:
+    passes, stalls = (
+        run_demo(name) for name in ("basket-centrifuge", "basket-centrifuge-small-motor")
+    )
+    found = {r["id"]: r for r in passes.results()["results"]}
+    assert passes.status == 0
+    assert 0.7 < found["passage-1-least-torque"]["value"] < 1
+    assert found["passage-1-peak"]["value"] > 0
+
+    found = {r["id"]: r for r in stalls.results()["results"]}
+    assert stalls.status == 3
+    assert found["passage-1-least-torque"]["value"] > 1
+    assert found["passage-1-peak"]["value"] is None
+    hang, critical = found["passage-1-hang-speed"], found["critical-speed"]
+    assert 0.9 < hang["value"] / critical["value"] < 1
+    conclusion = json.dumps(stalls.results()["conclusion"])
+    assert f"stalls at the critical speed and hangs at {hang['shown']}" in conclusion
+    assert "the linear result is void beyond contact" in conclusion
+    slow = next(c for c in stalls.results()["criteria"] if "washing" in c["title"])
+    assert slow["verdict"] == "not assessed"
+    assert "no passage" in slow["reason"]
+
+
 def test_both_unit_systems_are_shown(run_demo: Run) -> None:
     systems = {run_demo(name).results()["units"] for name in ONE_MASS}
     assert systems == {"si", "us"}

@@ -1,4 +1,4 @@
-"""Second computation of a run under torque: Newton's law in two planes, in the frame at rest.
+"""Second computation of a run: Newton's law in two planes, in the frame at rest.
 
 The first computation integrates Lagrange's equations in the frame that turns with the shaft, by
 an explicit Runge-Kutta method. Here the forces on the disc's centre and their moments about it are
@@ -17,6 +17,7 @@ import numpy as np
 from scipy.integrate import solve_ivp
 
 from reportgen.rotor.onemass_response import response, support_response
+from reportgen.rotor.passage_programme import Programme, speed_range
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -82,9 +83,55 @@ def rest_record(
         rtol=1e-8,
         atol=1e-8 * _scale(rotor, start.size),
     )
-    y = found.y
+    return _record(found.t, found.y)
+
+
+def prescribed_record(rotor: OneMassRotor, programme: Programme) -> RestRecord | None:
+    """Return the motion along a prescribed programme by the same equations, piece by piece.
+
+    None where it takes too many samples.
+    """
+    pieces = programme.segments
+    fastest = max(speed_range(programme)[1], rotor.natural_frequency)
+    rate = fastest / (2.0 * math.pi) * PER_TURN
+    if (programme.end_time - programme.start_time) * rate > MOST_SAMPLES:
+        return None
+    parts: list[RestRecord] = []
+    state: Floats | None = None
+    for piece in pieces:
+        # an inertia that no whirl moves, and the torque that gives it the piece's acceleration
+        inertia = 1e15 * rotor.mass * max(rotor.eccentricity, abs(rotor.bow), 1e-12) ** 2
+        torque = inertia * piece.acceleration
+        rates, first = _equations(rotor, inertia, lambda _, t=torque: t, piece.start_speed)  # type: ignore[misc]
+        if state is not None:
+            first = state
+        count = max(math.ceil(piece.duration * rate), 16) + 1
+        found: Any = solve_ivp(
+            rates,
+            (0.0, piece.duration),
+            first,
+            method="LSODA",
+            t_eval=np.linspace(0.0, piece.duration, count),
+            rtol=1e-9,
+            atol=1e-9 * _scale(rotor, first.size),
+        )
+        y = found.y
+        state = y[:, -1].copy()
+        state[-1] = piece.end_speed
+        parts.append(_record(piece.start_time + found.t, y))
+    names = ("time", "speed", "angle", "displacement", "velocity")
+    # where two pieces meet, the instant is kept once
     return RestRecord(
-        found.t, y[-1], y[-2], np.asarray(y[0] + 1j * y[2]), np.asarray(y[1] + 1j * y[3])
+        *(
+            np.concatenate([getattr(p, name)[0 if n == 0 else 1 :] for n, p in enumerate(parts)])
+            for name in names
+        )
+    )
+
+
+def _record(time: Floats, y: Floats) -> RestRecord:
+    return RestRecord(
+        time, y[-1], y[-2], np.asarray(y[0] + 1j * y[2]), np.asarray(y[1] + 1j * y[3])
     )
 
 

@@ -15,6 +15,7 @@ import numpy as np
 from scipy.integrate import solve_ivp
 from scipy.signal import cont2discrete, lfilter, lfiltic
 
+from reportgen.assess.transient_second import prescribed_record
 from reportgen.rotor import passage
 from reportgen.rotor.passage_integrated import passage_integrated
 from reportgen.rotor.passage_programme import speed_range
@@ -46,12 +47,20 @@ class Stepped:
 def stepped(rotor: OneMassRotor, programme: passage.Programme) -> Stepped | None:
     """Return |z| along a programme by stepping; None where it takes too many steps.
 
-    On flexible supports, and with internal damping, by a stepwise integrator of high order.
+    On flexible supports by a stepwise integrator of high order, with internal damping by a
+    multistep one.
     """
     first, last = programme.start_time, programme.end_time
     fastest = max(speed_range(programme)[1], rotor.natural_frequency)
     cycles = (last - first) * fastest / (2.0 * math.pi)
-    if rotor.support is not None or rotor.internal_damping:
+    if rotor.internal_damping:
+        record = prescribed_record(rotor, programme)
+        if record is None:
+            return None
+        method = "Newton's law in the frame at rest, multistep integration"
+        size = np.abs(record.displacement)
+        return Stepped(record.time, size, method, 1e-5, "48 samples a turn, parabola between")
+    if rotor.support is not None:
         if cycles > _MOST_CYCLES:
             return None
         times = np.linspace(first, last, math.ceil(cycles * _PER_TURN) + 2)
