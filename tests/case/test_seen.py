@@ -113,6 +113,7 @@ def test_the_report_prints_them_as_they_were_printed(case: Path) -> None:
     class Kept(Sheet):
         def _emit(self, block: Any, extra: Any = None) -> None:
             kept.append(block)
+            super()._emit(block, extra)
 
     standard.seen(Kept(read.resolved()))
     blocks = json.dumps(kept, ensure_ascii=False)
