@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -103,6 +104,12 @@ def _at(run: TransientRun, values: np.ndarray | None, speed: float) -> float:
     return 0.0 if values is None else float(np.interp(speed, run.drive.speed, values))
 
 
+def _small(share: float) -> str:
+    """Return a share of rounding size as a power of ten that it stays below."""
+    power = max(math.ceil(math.log10(share)), -15) if share > 0.0 else -15
+    return f"below 10{str(power).translate(str.maketrans('-0123456789', '⁻⁰¹²³⁴⁵⁶⁷⁸⁹'))}"
+
+
 def _energies(sheet: Sheet, runs: list[TransientRun]) -> None:
     """Show where the energy of each run went, and what is left over of the balance."""
     rows: list[list[Inline]] = []
@@ -122,7 +129,7 @@ def _energies(sheet: Sheet, runs: list[TransientRun]) -> None:
                         audit.stored_end,
                     )
                 ),
-                f"{audit.mismatch:.0e}" if audit.mismatch >= 1e-15 else "< 1e-15",
+                _small(audit.mismatch),
             ]
         )
     if not rows:

@@ -152,14 +152,18 @@ def waterfall_figure(sheet: Sheet, run: TransientRun) -> tuple[Any, str]:
     figure, ax = new(1, 1, height=3.7)
     frequency = sheet.to_reader(fall.frequency, "frequency")
     level = sheet.to_reader(fall.level, "displacement")
-    thin = max(1, frequency.size // 260)
+    thin = max(1, frequency.size // 170)
     frequency, level = frequency[::thin], _thinned(level, thin)
     step = float(fall.time[1] - fall.time[0])
     scale = 5.0 * step / float(level.max())
     for number, (time, line) in enumerate(zip(fall.time, level, strict=True)):
         height = time + scale * line
         ax.fill_between(frequency, time, height, color="white", zorder=2 * (99 - number))
-        ax.plot(frequency, height, color=BLUE, linewidth=0.8, zorder=2 * (99 - number) + 1)
+        # every fourth can be read off and goes into the figure's data
+        label = f"{time:.3g} s" if number % 4 == 1 else "_"
+        ax.plot(
+            frequency, height, color=BLUE, linewidth=0.8, zorder=2 * (99 - number) + 1, label=label
+        )
     turning = sheet.to_reader(fall.speed, "frequency")
     ax.plot(turning, fall.time, color=ORANGE, linewidth=1.0, linestyle=_DASHED, zorder=300,
             label="Speed of rotation")  # fmt: skip

@@ -108,9 +108,9 @@ def _contours(sheet: Sheet, ax: Any, found: PeakMap) -> None:
         xytext=(5, 5), textcoords="offset points", fontsize=_SMALL, color=INK,
     )  # fmt: skip
     ax.set_xscale("log")
-    red = "; red: room in clearance" if found.room is not None else ""
-    title = f"lines of equal peak ({sheet.unit('displacement')}){red}"
-    ax.set_title(title, fontsize=8, loc="left")
+    red = "; red: clearance" if found.room is not None else ""
+    title = f"equal peak ({sheet.unit('displacement')}){red}"
+    ax.set_title(title, fontsize=_SMALL, loc="left")
     ax.set_xlabel(f"Acceleration, size ({sheet.unit('acceleration_speed')})")
     ax.set_ylabel("Damping ratio")
 
