@@ -89,10 +89,17 @@ def passage_peak(
         As in `passage`, if the rotor has neither unbalance nor bow, or if the search would need
         more than 20 million instants (a very long dwell without damping).
     """
+    amplitude, time, speed = _highest(Track(rotor, programme, start))
+    return judged_peak(rotor, programme, amplitude, time, speed)
+
+
+def judged_peak(
+    rotor: OneMassRotor, programme: Programme, amplitude: float, time: float, speed: float
+) -> PassagePeak:
+    """Set a highest amplitude beside the steady peak, and judge whether it is a passage."""
     criticals = resonance_peaks(rotor)
     low, high = speed_range(programme)
     passed = [peak for peak in criticals if low < (peak.speed or 0.0) < high]
-    amplitude, time, speed = _highest(Track(rotor, programme, start))
     steady = max((peak.amplitude or 0.0 for peak in passed or criticals), default=None)
     ratio = None if steady is None else amplitude / steady
     if not criticals:
