@@ -87,8 +87,7 @@ def assess(case: OneMassCase) -> OneMassAssessment:
     )
     peak = onemass.resonance_peak(rotor)
     half_power = onemass.amplification_factor(rotor)
-    found = [find_passage(case, rotor, p, i) for i, p in enumerate(case.passages or ())]
-    passages = tuple(p for p in found if p is not None)
+    passages = tuple(find_passage(case, rotor, p, i) for i, p in enumerate(case.passages or ()))
     stress = find_stress(case, rotor, speeds["rated"])
     findings = (
         *_critical_findings(rotor, peak, half_power),

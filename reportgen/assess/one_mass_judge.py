@@ -83,7 +83,7 @@ class Judging:
             rule,
             trip=self.speeds.get("trip"),
             # the closed form knows all critical speeds of one mass: no range is left unsearched
-            searched=(0.0, 1e9),
+            searched=(0.0, None),
         )
 
     def _amplitude(self, criterion: Any) -> tuple[Outcome, str]:
@@ -108,7 +108,7 @@ class Judging:
 
     def _passages(self, criterion: Any) -> list[tuple[Outcome, str]]:
         allowed = float(criterion.share)
-        source = stated(criterion, SOURCES["petroleum-clearance"])
+        source = stated(criterion)
         if not self.passages:
             outcome = clearance_share(
                 None, None, allowed=allowed, source=source, title="Clearance during passage"

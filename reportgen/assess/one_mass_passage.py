@@ -9,8 +9,10 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from reportgen.assess.model import Finding, SecondComputation
-from reportgen.assess.passage_second import stepped_peak
+from reportgen.assess.transient_stepped import stepped, top
 from reportgen.rotor import onemass, passage
+from reportgen.rotor.passage_integrated import passage_integrated
+from reportgen.rotor.passage_integrated_peak import integrated_peak
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -41,7 +43,8 @@ class PassageFindings:
     sag: float
     runout: float
     clearance: float | None
-    stepped_peak: float | None
+    method: str
+    second: SecondComputation | None
 
     @property
     def closest(self) -> float:
@@ -58,16 +61,9 @@ class PassageFindings:
                 value=float(self.peak.amplitude),
                 quantity="displacement",
                 measure="0-peak",
-                method="exact, Faddeeva function",
+                method=self.method,
                 where=f"{self.id}-peak",
-                second=None
-                if self.stepped_peak is None
-                else SecondComputation(
-                    "equation of motion stepped through time",
-                    self.stepped_peak,
-                    1e-5,
-                    "fourth order in a step of 1/64 turn",
-                ),
+                second=self.second,
             ),
             Finding(
                 id=f"{self.id}-peak-speed",
@@ -75,7 +71,7 @@ class PassageFindings:
                 symbol=r"\Omega_{\max}",
                 value=float(self.peak.speed),
                 quantity="speed",
-                method="exact, Faddeeva function",
+                method=self.method,
                 where=f"{self.id}-peak",
                 headline=False,
             ),
@@ -84,37 +80,43 @@ class PassageFindings:
 
 def find_passage(
     case: OneMassCase, rotor: OneMassRotor, given: PassageGiven, index: int
-) -> PassageFindings | None:
-    """Calculate one passage of the case; its closed form holds for rigid supports only."""
-    if rotor.support is not None:
-        return None
+) -> PassageFindings:
+    """Calculate one passage of the case: in closed form, with internal damping by integration."""
+    integrated = rotor.internal_damping > 0.0
+    motion = passage_integrated if integrated else passage.passage
     programme = passage.ConstantAcceleration(
         start_speed=float(given.from_),
         end_speed=float(given.to),
         acceleration=float(given.acceleration),
     )
     duration = (programme.end_speed - programme.start_speed) / programme.acceleration
-    peak = passage.passage_peak(rotor, programme)
+    peak = (integrated_peak if integrated else passage.passage_peak)(rotor, programme)
+    twice = stepped(rotor, programme, peak.time)
     even = np.linspace(0.0, duration, 1501)
     slow = 12.0 * 2 * math.pi / rotor.natural_frequency
     near = np.linspace(peak.time - slow, peak.time + 3 * slow, 900)
     time = np.unique(np.concatenate([even, near[(near >= 0) & (near <= duration)]]))
-    run = passage.passage(rotor, programme, time)
     turns = 3 * 2 * math.pi / max(peak.speed, 0.05 * rotor.natural_frequency)
     orbit_time = np.linspace(max(peak.time - turns, 0.0), min(peak.time + turns, duration), 600)
+    instants, back = np.unique(np.concatenate([time, orbit_time]), return_inverse=True)
+    run = motion(rotor, programme, instants)
+    drawn, orbiting = back[: time.size], back[time.size :]
     return PassageFindings(
         id=f"passage-{index + 1}",
         name=given.name,
         programme=programme,
         time=time,
-        speed=run.speed,
-        displacement=run.displacement,
-        steady=onemass.response(rotor, run.speed),
+        speed=run.speed[drawn],
+        displacement=run.displacement[drawn],
+        steady=onemass.response(rotor, run.speed[drawn]),
         peak=peak,
         orbit_time=orbit_time,
-        orbit=passage.passage(rotor, programme, orbit_time).displacement,
+        orbit=run.displacement[orbiting],
         sag=float(onemass.static_sag(rotor)) if case.machine.orientation == "horizontal" else 0.0,
         runout=float(given.runout or 0.0),
         clearance=None if given.clearance is None else float(given.clearance),
-        stepped_peak=stepped_peak(rotor, programme, peak.time),
+        method="equations of motion integrated" if integrated else "exact, Faddeeva function",
+        second=None
+        if twice is None
+        else SecondComputation(twice.method, top(twice.size), twice.tolerance, twice.because),
     )

@@ -30,6 +30,7 @@ if TYPE_CHECKING:
 
 _PER_TURN = 64
 _MOST_SAMPLES = 1_000_000
+_FORGOTTEN = 30.0  # decay times after which a start is forgotten: e⁻³⁰
 _MOST_CYCLES = 2_500  # of a stepwise integration: about two seconds
 
 
@@ -44,11 +45,14 @@ class Stepped:
     because: str
 
 
-def stepped(rotor: OneMassRotor, programme: passage.Programme) -> Stepped | None:
+def stepped(
+    rotor: OneMassRotor, programme: passage.Programme, near: float | None = None
+) -> Stepped | None:
     """Return |z| along a programme by stepping; None where it takes too many steps.
 
     On flexible supports by a stepwise integrator of high order, with internal damping by a
-    multistep one.
+    multistep one. On rigid supports a programme too long to step whole is stepped around the
+    instant ``near`` (s), from steady whirl so long before it that the start is forgotten.
     """
     first, last = programme.start_time, programme.end_time
     fastest = max(speed_range(programme)[1], rotor.natural_frequency)
@@ -67,11 +71,15 @@ def stepped(rotor: OneMassRotor, programme: passage.Programme) -> Stepped | None
         run = passage_integrated(rotor, programme, times, rtol=1e-9)
         method = "equations of motion integrated by an explicit Runge-Kutta method"
         return Stepped(times, run.amplitude, method, 1e-5, "64 samples a turn, parabola between")
+    if near is not None and 2 * cycles * _PER_TURN > _MOST_SAMPLES and rotor.damping_ratio:
+        memory = _FORGOTTEN / (rotor.damping_ratio * rotor.natural_frequency)
+        first, last = max(first, near - memory), min(last, near + 0.3 * memory)
+        cycles = (last - first) * fastest / (2.0 * math.pi)
     count = 2 * math.ceil(cycles * _PER_TURN) + 9
     if count > _MOST_SAMPLES:
         return None
-    fine = _record(rotor, programme, count)
-    coarse = _record(rotor, programme, (count + 1) // 2)
+    fine = _record(rotor, programme, first, last, count)
+    coarse = _record(rotor, programme, first, last, (count + 1) // 2)
     size = np.abs((4.0 * fine[::2] - coarse) / 3.0)
     return Stepped(
         np.linspace(first, last, (count + 1) // 2),
@@ -92,10 +100,12 @@ def top(size: Floats) -> float:
     return middle - (right - left) ** 2 / (8.0 * bend) if bend < 0.0 else middle
 
 
-def _record(rotor: OneMassRotor, programme: passage.Programme, count: int) -> Complexes:
+def _record(
+    rotor: OneMassRotor, programme: passage.Programme, first: float, last: float, count: int
+) -> Complexes:
     m, c, k = rotor.mass, rotor.damping, rotor.stiffness
     bow = k * rotor.bow_vector
-    times, step = np.linspace(programme.start_time, programme.end_time, count, retstep=True)
+    times, step = np.linspace(first, last, count, retstep=True)
     samples = np.empty(count, dtype=np.complex128)
     pieces = programme.segments
     starts = np.array([piece.start_time for piece in pieces])
@@ -106,8 +116,11 @@ def _record(rotor: OneMassRotor, programme: passage.Programme, count: int) -> Co
         speed, angle = piece.speed(elapsed), piece.start_angle + piece.turned(elapsed)
         inertia = m * rotor.eccentricity * (speed**2 - 1j * piece.acceleration)
         samples[mine] = (inertia + bow) * np.exp(1j * angle)
-    w = pieces[0].start_speed
+    before, elapsed = pieces[owner[0]], first - pieces[owner[0]].start_time
+    w = float(before.speed(np.asarray(elapsed)))
+    turned = before.start_angle + float(before.turned(np.asarray(elapsed)))
     start = (m * rotor.eccentricity * w**2 + bow) / (k - m * w**2 + 1j * c * w)
+    start *= np.exp(1j * turned)
     slope = (samples[1] - samples[0]) / step
     # the filter looks two samples back: the first is the start, the second one step on
     second = solve_ivp(

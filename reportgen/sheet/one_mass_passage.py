@@ -18,13 +18,6 @@ def passages(sheet: Sheet, calc: OneMassAssessment) -> None:
     if not sheet.case.passages:
         sheet.paragraph("The case states no passage; none is assessed.")
         return
-    if not calc.passages:
-        sheet.finding(
-            "Passages not assessed",
-            "The exact passage holds for rigid supports; with the flexible supports of this case "
-            "the passage needs the model by stations.",
-        )
-        return
     for one in calc.passages:
         _passage(sheet, calc, one)
 
@@ -47,7 +40,7 @@ def _passage(sheet: Sheet, calc: OneMassAssessment, one: PassageFindings) -> Non
             f"{sheet.show(peak.speed, 'speed')}, {sheet.show(peak.time, 'time')} after the start",
         ],
     ]
-    if peak.crossed:
+    if peak.crossed and peak.steady_peak:
         share = peak.amplitude / peak.steady_peak
         rows.append(
             [
