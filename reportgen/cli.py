@@ -29,7 +29,9 @@ def main(argv: Sequence[str] | None = None) -> int:
     try:
         return commands.run(arguments)
     except ReportgenError as error:
-        commands.print_error(error, as_json=arguments.json)
+        from reportgen.commands.shared import print_error
+
+        print_error(error, as_json=arguments.json)
         return error.exit_status
     except KeyboardInterrupt:
         print("stopped; finished packages are whole", file=sys.stderr)
