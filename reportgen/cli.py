@@ -53,7 +53,26 @@ def parser() -> argparse.ArgumentParser:
     commands = top.add_subparsers(dest="command", metavar="COMMAND", required=True)
 
     run = _command(commands, "run", "calculate a case and leave a signed calculation package")
-    run.add_argument("cases", nargs="+", type=Path, metavar="CASE", help="case file (YAML)")
+    run.add_argument(
+        "cases",
+        nargs="+",
+        metavar="CASE",
+        help="case file or family of cases (YAML), or a pattern such as 'cases/*.yaml'",
+    )
+    run.add_argument(
+        "-j",
+        "--jobs",
+        type=_at_least_one,
+        default=1,
+        metavar="N",
+        help="run N cases at once on this computer (default 1)",
+    )
+    run.add_argument(
+        "--scheduler", metavar="ADDRESS", help="run on the Dask cluster of this scheduler"
+    )
+    run.add_argument(
+        "--fresh", action="store_true", help="run again what has not changed since its last run"
+    )
     _add_run_options(run)
 
     check = _command(commands, "check", "read and judge a case's inputs; run nothing")
@@ -152,6 +171,13 @@ def _command(commands: Any, name: str, words: str) -> argparse.ArgumentParser:
     return command
 
 
+def _at_least_one(text: str) -> int:
+    number = int(text)
+    if number < 1:
+        raise argparse.ArgumentTypeError(f"{text}: give 1 or more")
+    return number
+
+
 def _add_run_options(run: argparse.ArgumentParser) -> None:
     run.add_argument(
         "-o",
@@ -190,8 +216,9 @@ def _add_making_options(run: argparse.ArgumentParser) -> None:
     run.add_argument(
         "--kernel",
         choices=("warm", "plain"),
-        default="plain",
-        help="warm: kernels forked from a prepared parent; plain: a new process each (default)",
+        default=None,
+        help="warm: kernels forked from a prepared parent; plain: a new process each (default: "
+        "warm for more than one case, where the system can fork)",
     )
     _add_identity_options(run)
 

@@ -6,7 +6,7 @@ import argparse
 from pathlib import Path
 from typing import Any
 
-from reportgen.commands.running import made, print_done
+from reportgen.commands.results import made, print_done
 from reportgen.commands.shared import note, print_json, print_table, say
 from reportgen.errors import InputError, Problem
 

@@ -3,123 +3,74 @@
 from __future__ import annotations
 
 import argparse
-import sys
-from collections.abc import Callable
+from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
+from tempfile import TemporaryDirectory
 
-from reportgen.commands.shared import identity_of, note, print_json, say
+from reportgen.commands.batch import run_batch
+from reportgen.commands.results import first_signature, options_of, print_done
+from reportgen.commands.shared import note, print_json, say
+from reportgen.errors import InputError, Problem
 
 
 def run(arguments: argparse.Namespace) -> int:
-    from reportgen.run.job import Options, build
+    """Calculate the cases given, one by one or many at once."""
+    with TemporaryDirectory(prefix="reportgen-") as scratch:
+        cases = _cases(arguments.cases, Path(scratch))
+        if len(cases) > 1 or arguments.scheduler:
+            return run_batch(cases, arguments)
+        return _run_one(cases[0].path, arguments)
+
+
+@dataclass(frozen=True)
+class Asked:
+    """A case to run, and how to name it to the user."""
+
+    path: Path
+    name: str
+
+
+def _cases(given: list[str], scratch: Path) -> list[Asked]:
+    """Return the cases meant: patterns looked up, families written out."""
+    from reportgen.run.family import expand, is_family
+
+    found: list[Asked] = []
+    for number, text in enumerate(given):
+        path = Path(text)
+        if not path.exists() and any(sign in text for sign in "*?["):
+            matched = sorted(Path(path.anchor or ".").glob(str(path.relative_to(path.anchor))))
+            if not matched:
+                raise InputError(Problem(f"no file matches {text!r}", "check the pattern"))
+        else:
+            matched = [path]
+        for one in matched:
+            if is_family(one):
+                folder = scratch / f"{number}-{one.stem}"
+                members = expand(one, folder)
+                found += [Asked(case, f"{one}, {case.stem}") for case in members]
+            else:
+                found.append(Asked(one, str(one)))
+    return found
+
+
+def _run_one(case: Path, arguments: argparse.Namespace) -> int:
+    from reportgen.run.cache import RunStore
+    from reportgen.run.remembered import calculate, described, store_folder
     from reportgen.sheet.lines import plain
 
-    options = Options(
-        output=arguments.output,
-        allow_templates=frozenset(arguments.allow_template),
-        house=arguments.house,
-        kernel=arguments.kernel,
-        timeout=arguments.timeout,
-        replace_draft=arguments.replace_draft,
-    )
     sign = None if arguments.no_sign else first_signature(arguments)
-    done = []
-    for case_path in arguments.cases:
-        one = build(case_path, options, say, sign)
-        for words in one.notes:
-            note(words)
-        done.append(one)
-        if not arguments.json:
-            print_done(one)
-    if arguments.json:
-        print_json(
-            [
-                {
-                    "package": str(one.package),
-                    "notes": one.notes,
-                    "exit_status": one.exit_status,
-                    "conclusion": plain(one.results["conclusion"]),
-                    "criteria": one.results["criteria"],
-                    "holds": one.results["holds"],
-                }
-                for one in done
-            ]
-        )
-    return max(one.exit_status for one in done)
-
-
-def made(case: Path, arguments: argparse.Namespace) -> Any:
-    """Run a case that a command wrote and return what is done."""
-    from reportgen.run.job import Options, build
-
-    options = Options(
-        output=arguments.output,
-        allow_templates=frozenset(getattr(arguments, "allow_template", ())),
-        house=arguments.house,
-        kernel=arguments.kernel,
-        timeout=arguments.timeout,
-        replace_draft=arguments.replace_draft,
-    )
-    sign = None if arguments.no_sign else first_signature(arguments)
-    one = build(case, options, say, sign)
+    store = None if arguments.fresh else RunStore(store_folder())
+    one = calculate(case, options_of(arguments), say, sign, store)
     for words in one.notes:
         note(words)
-    return one
-
-
-def first_signature(
-    arguments: argparse.Namespace,
-) -> Callable[[Path, dict[str, Any]], None]:
-    """Return what signs a fresh package as prepared; a draft stays unsigned, and that is said."""
-
-    def sign(package: Path, results: dict[str, Any]) -> None:
-        from reportgen.package.sign import sign_package
-
-        document = results["document"]
-        if document["status"] == "draft":
-            note("the case is a draft: its package is not signed")
-            return
-        signer = document["prepared"]["name"]
-        words = "Prepared by calculation from the case file in this package."
-        sign_package(package, "prepared", identity_of(arguments, signer), words, signer)
-
-    return sign
-
-
-def print_done(one: Any) -> None:
-    from rich.console import Console
-    from rich.table import Table
-    from rich.text import Text
-
-    console = Console(highlight=False, width=None if sys.stdout.isatty() else 120)
-    results = one.results
-    table = Table(box=None, pad_edge=False, header_style="bold")
-    for title, justify in (
-        ("criterion", "left"),
-        ("value", "right"),
-        ("limit", "right"),
-        ("margin", "right"),
-        ("verdict", "left"),
-    ):
-        table.add_column(title, justify=justify, overflow="fold")  # type: ignore[arg-type]
-    for criterion in results["criteria"]:
-        limit = criterion["limit_shown"]
-        if criterion["limit"] is not None:
-            limit = f"{criterion['sense']} {limit}"
-        table.add_row(
-            Text(criterion["title"]),
-            Text(criterion["value_shown"]),
-            Text(limit),
-            Text(criterion["margin_shown"]),
-            Text(criterion["verdict"], style="" if criterion["verdict"] == "meets" else "bold"),
-        )
-    document = results["document"]
-    console.print(
-        Text(f"{document['number']} revision {document['revision']}: {document['title']}")
-    )
-    console.print(table)
-    if results["holds"]:
-        console.print(Text(f"open holds: {len(results['holds'])} (page one of the report)"))
-    # a path must stay in one piece, whatever the width of the window
-    print(f"package: {one.package}")
+    if not one.again:
+        note(f"nothing has changed since {one.package.name} was made: it was not run again")
+        if sign is not None and not (one.package / "signatures" / "prepared").exists():
+            sign(one.package, one.results)
+    if arguments.json:
+        found = described(one)
+        print_json({**found, "conclusion": plain(found["conclusion"]),
+                    "exit_status": one.exit_status})  # fmt: skip
+    else:
+        print_done(one)
+    return one.exit_status

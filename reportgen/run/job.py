@@ -50,11 +50,25 @@ class Options:
 
 @dataclass(frozen=True)
 class Done:
-    """What a run leaves: the package, its results, and what was particular about writing it."""
+    """What a run leaves.
+
+    Parameters
+    ----------
+    package, results
+        The package's folder, and its results as in ``results.json``.
+    notes
+        What was particular about writing it.
+    beside
+        Files beside the case that the report depends on: side tables, a template of one's own.
+    again
+        Whether it was calculated now; False where its package was there, unaltered.
+    """
 
     package: Path
     results: dict[str, Any] = field(repr=False)
     notes: tuple[str, ...] = ()
+    beside: tuple[str, ...] = ()
+    again: bool = True
 
     @property
     def exit_status(self) -> int:
@@ -116,7 +130,10 @@ def build(
         finish=None if finish is None else lambda folder: finish(folder, results),
         report=kept.append,
     )
-    return Done(package, results, tuple(kept))
+    beside = [name for name in sides if name not in letterhead]
+    if origin == "local":
+        beside.append(case.template)
+    return Done(package, results, tuple(kept), tuple(beside))
 
 
 def house_of(case: Any, case_path: Path, options: Options) -> tuple[House | None, dict[str, bytes]]:
