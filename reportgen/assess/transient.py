@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, TypeVar
 
 from reportgen.assess import one_mass_second as second
 from reportgen.assess.cautions import CAUTIONS, NOT_ASSESSED, Caution
@@ -13,13 +13,25 @@ from reportgen.assess.transient_judge import Judging, Steady
 from reportgen.assess.transient_model import TransientAssessment, in_rpm
 from reportgen.assess.transient_one_mass import find_run
 from reportgen.assess.transient_side import OneMassSide
+from reportgen.assess.transient_station_side import station_side, steady_of
+from reportgen.assess.transient_station_whole import (
+    StationFacts,
+    station_criticals,
+    station_sudden,
+)
+from reportgen.assess.transient_stations import find_station_run
 from reportgen.assess.transient_sudden import find_sudden
 from reportgen.errors import ModelError
 from reportgen.rotor import onemass
 
 if TYPE_CHECKING:
+    from collections.abc import Callable
+
     from reportgen.assess.transient_model import SuddenRun, TransientRun
-    from reportgen.case.passage import PassageCase
+    from reportgen.assess.transient_stations import Reduction
+    from reportgen.case.passage import PassageCase, PassageProgramme
+
+T = TypeVar("T")
 
 PASSAGE_CAUTIONS = (
     Caution(
@@ -45,14 +57,15 @@ def assess(case: PassageCase) -> TransientAssessment:
     ModelError
         If the methods do not cover the case's values, or a passage would take too long.
     """
-    if case.rotor is None:
-        raise ModelError("passages of a rotor by stations are not calculated yet")
-    return _one_mass(case)
+    return _stations(case) if case.rotor is None else _one_mass(case)
 
 
 def _one_mass(case: PassageCase) -> TransientAssessment:
     side = OneMassSide.of(case)
-    runs = tuple(_run(side, case, index) for index in range(len(case.passages)))
+    runs = tuple(
+        _run(lambda given, n: find_run(side, given, n), case, index)
+        for index in range(len(case.passages))
+    )
     sudden: SuddenRun | None = None
     if case.sudden_unbalance is not None:
         sudden = find_sudden(side, case.sudden_unbalance)
@@ -61,36 +74,92 @@ def _one_mass(case: PassageCase) -> TransientAssessment:
         *(finding for run in runs for finding in run_findings(run)),
         *sudden_findings(sudden),
     )
-    speeds = case.speeds.stated()
-    judging = Judging(
-        case, _steady(side, speeds), runs, sudden, {finding.id: finding for finding in findings}
+    steady = _steady(side, case.speeds.stated())
+    return _whole(
+        case,
+        "one mass",
+        findings,
+        steady,
+        runs,
+        sudden,
+        side,
+        ("second and higher bending modes, gyroscopic effect, speed-dependent supports",),
     )
+
+
+def _stations(case: PassageCase) -> TransientAssessment:
+    assert case.stations is not None
+    side = station_side(case)
+    found: list[tuple[TransientRun, Reduction]] = [
+        _run(lambda given, n: find_station_run(side, given, n), case, index)
+        for index in range(len(case.passages))
+    ]
+    runs = tuple(run for run, _ in found)
+    sudden: SuddenRun | None = None
+    if case.sudden_unbalance is not None:
+        on = case.sudden_unbalance.on
+        part = next(p for _, p in case.stations.parts() if getattr(p, "name", None) == on)
+        sudden = station_sudden(side, case.sudden_unbalance, side.built.station(part))
+    ends = [passage.speeds() for passage in case.passages]
+    findings = (
+        *station_criticals(side, min(e[0] for e in ends), max(e[1] for e in ends)),
+        *(finding for run in runs for finding in run_findings(run)),
+        *sudden_findings(sudden),
+    )
+    return _whole(
+        case,
+        "stations",
+        findings,
+        steady_of(side, case),
+        runs,
+        sudden,
+        StationFacts(side, tuple(reduction for _, reduction in found)),
+        (
+            "the torque that the whirl draws while the speed follows from torques: it is held "
+            "against the drive, not coupled to it",
+        )
+        if any(run.drive is not None for run in runs)
+        else (),
+    )
+
+
+def _whole(
+    case: PassageCase,
+    model: str,
+    findings: tuple[Finding, ...],
+    steady: Steady,
+    runs: tuple[TransientRun, ...],
+    sudden: SuddenRun | None,
+    facts: object,
+    not_assessed: tuple[str, ...],
+) -> TransientAssessment:
+    judging = Judging(case, steady, runs, sudden, {finding.id: finding for finding in findings})
     return TransientAssessment(
         findings=findings,
         judged=judging.all(),
         cautions=(*CAUTIONS[:1], *PASSAGE_CAUTIONS, *CAUTIONS[1:]),
         not_assessed=(
-            "second and higher bending modes, gyroscopic effect, speed-dependent supports",
+            *not_assessed,
             "what happens beyond contact",
             "torsional oscillation of the drive train during the run",
             *NOT_ASSESSED,
         ),
-        model="one mass",
-        speeds=speeds,
-        critical=side.critical,
+        model=model,
+        speeds=case.speeds.stated(),
+        critical=findings[0].value,
         runs=runs,
         sudden=sudden,
-        limit=side.limit,
+        limit=None if case.limit is None else float(case.limit.amplitude),
         asked=asked(case),
         horizontal=case.machine.orientation == "horizontal",
-        facts=side,
+        facts=facts,
     )
 
 
-def _run(side: OneMassSide, case: PassageCase, index: int) -> TransientRun:
+def _run(find: Callable[[PassageProgramme, int], T], case: PassageCase, index: int) -> T:
     given = case.passages[index]
     try:
-        return find_run(side, given, index)
+        return find(given, index)
     except ModelError as error:
         raise ModelError(f"passages[{index + 1}] {given.name!r}: {in_rpm(str(error))}") from error
 

@@ -87,7 +87,7 @@ def _above(run: TransientRun, place: Watched, *, headline: bool) -> tuple[Findin
             quantity="time",
             method="instants at which the amplitude meets the limit",
             where=f"{run.id}-result",
-            headline=headline,
+            headline=headline and place.above_second is not None,
             second=place.above_second,
         ),
     )

@@ -178,18 +178,26 @@ class Judging:
         for run in self.runs:
             if run.drive is None or run.drive.drive is None:
                 continue
-            margin = run.drive.margin
+            margin = None if run.drive.margin is None else run.drive.margin.margin
+            quasi = run.drive.quasi_static
+            if margin is None and quasi is not None and quasi < 1.0:
+                margin = 1.0 / quasi - 1.0
             outcome = project_limit(
-                None if margin is None else margin.margin,
+                margin,
                 float(criterion.margin),
                 sense="at least",
                 quantity="percent",
-                absent=run.reason or "the least torque that passes is not known for this rotor",
+                absent=run.reason
+                or "load and steady whirl exceed the drive: whether it passes is not known",
                 source=stated(criterion),
                 title=f"Drive torque above the least that passes, {run.name}",
             )
             if run.stalled and outcome.verdict == "does not meet":
                 outcome = replace(outcome, reason="with the drive as stated the rotor stalls")
+            if run.drive.margin is None and outcome.verdict == "meets":
+                outcome = replace(
+                    outcome, reason="against load and steady whirl: passing takes no more torque"
+                )
             found.append((outcome, f"{run.id}-drive-margin"))
         if found:
             return found

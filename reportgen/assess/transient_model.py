@@ -103,7 +103,8 @@ class DriveFindings:
     """Torques of a run over speed, shape (n,), and how much torque passing takes.
 
     ``whirl`` is the torque that the steady whirl draws, None where the model has none. ``least``
-    is the least share of the drive's torque that passes, by another method.
+    is the least share of the drive's torque that passes, by another method; ``quasi_static`` the
+    share that passes however slowly, where only that is known.
     """
 
     inertia: float
@@ -112,6 +113,7 @@ class DriveFindings:
     load: Floats | None
     whirl: Floats | None
     margin: DriveMargin | None = None
+    quasi_static: float | None = None
     least_second: SecondComputation | None = None
 
 

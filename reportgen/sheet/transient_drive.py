@@ -36,12 +36,7 @@ def _margin(sheet: Sheet, run: TransientRun) -> None:
     assert run.drive is not None
     margin = run.drive.margin
     if margin is None:
-        sheet.paragraph(
-            f"{run.name}: the least torque that passes is not assessed, as the run does not lead "
-            "through a critical speed with damping."
-            if run.critical is None or not run.watched[0].steady.size
-            else f"{run.name}: the least torque that passes is not assessed for this model."
-        )
+        _without_margin(sheet, run)
         return
     at = run.critical or 0.0
     drive_at = _at(run, run.drive.drive, at)
@@ -74,6 +69,44 @@ def _margin(sheet: Sheet, run: TransientRun) -> None:
         [{"title": "", "width": 0.42}, {"title": "Value", "width": 0.58}],
         rows,
         note="Shares are of the drive torque as stated, at every speed alike.",
+    )
+
+
+def _without_margin(sheet: Sheet, run: TransientRun) -> None:
+    """Say what is known of the least torque where no runs have bracketed it."""
+    assert run.drive is not None
+    quasi = run.drive.quasi_static
+    if quasi is None:
+        sheet.paragraph(
+            f"{run.name}: the least torque that passes is not assessed; the run does not lead "
+            "through a critical speed with damping."
+        )
+        return
+    at = run.critical or 0.0
+    rows: list[list[Inline]] = [
+        ["Drive torque at the critical speed", sheet.show(_at(run, run.drive.drive, at), "torque")],
+        ["Load torque there", sheet.show(_at(run, run.drive.load, at), "torque")],
+        [
+            "Torque that steady whirl draws there",
+            sheet.show(_at(run, run.drive.whirl, at), "torque"),
+        ],
+        [
+            "Share of the drive torque that passes however slowly",
+            {"strong": sheet.show(quasi, "percent")},
+        ],
+        [
+            "In words",
+            "The drive exceeds load and steady whirl at every speed: it passes."
+            if quasi < 1.0
+            else {"strong": "Load and steady whirl exceed the drive at some speed: it may stall."},
+        ],
+    ]
+    sheet.table(
+        f"{run.id}-margin",
+        f"{run.name}: drive margin",
+        [{"title": "", "width": 0.5}, {"title": "Value", "width": 0.5}],
+        rows,
+        note="The least torque that passes is no more than that share.",
     )
 
 

@@ -161,6 +161,11 @@ def torque_figure(sheet: Sheet, run: TransientRun) -> tuple[Any, str]:
             f"the drive passes with {sheet.show(torques.margin.margin, 'percent', 3)} more torque "
             "than the least that does."
         )
+    elif torques.quasi_static is not None:
+        words += (
+            f"{sheet.show(torques.quasi_static, 'percent', 3)} of the drive carries load and "
+            "steady whirl at every speed."
+        )
     else:
         words += "drive and load torque."
     ax.legend(loc="upper right", fontsize=_SMALL, ncols=2)

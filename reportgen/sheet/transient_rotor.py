@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, cast
 
-from reportgen.sheet import one_mass
+from reportgen.sheet import one_mass, transient_stations
 
 if TYPE_CHECKING:
     from reportgen.assess.one_mass import OneMassAssessment
@@ -16,6 +16,9 @@ if TYPE_CHECKING:
 
 def rotor(sheet: Sheet, calc: TransientAssessment) -> None:
     """Show the rotor from the givens: stiffness, frequency, damping, eccentricity."""
+    if calc.model == "stations":
+        transient_stations.rotor(sheet, calc)
+        return
     side = cast("OneMassSide", calc.facts)
     like = cast("OneMassAssessment", side)  # the same rotor and grade speed, by the same names
     one_mass.stiffness(sheet, like)
@@ -63,6 +66,9 @@ def critical_speed(sheet: Sheet, calc: TransientAssessment) -> None:
 
 def method(sheet: Sheet, calc: TransientAssessment) -> None:
     """Show the equations that the passages of this case are calculated by."""
+    if calc.model == "stations":
+        transient_stations.method(sheet, calc)
+        return
     sheet.paragraph(
         "The shaft's centre is at z = x + iy from the line of bearings, x horizontal, y upward, "
         "the rotor turning counter-clockwise as seen, by the angle θ. The mass centre lies at e "

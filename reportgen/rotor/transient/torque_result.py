@@ -32,6 +32,8 @@ class TorqueRun:
         Instants [s], shape (n,), at the ends of the integrator's steps.
     speed, angle
         Speed [rad/s] and angle [rad] of the rotor, shape (n,).
+    acceleration
+        Angular acceleration [rad/s²], shape (n,).
     displacement
         Of the disc in the frame at rest [m], complex, shape (n,).
     outcome
@@ -61,6 +63,7 @@ class TorqueRun:
     time: Floats
     speed: Floats
     angle: Floats
+    acceleration: Floats
     displacement: Complexes
     outcome: str
     critical_speed: float | None
@@ -135,6 +138,7 @@ def result_of(
         time=time,
         speed=speed,
         angle=angle,
+        acceleration=rates[:, SPEED].real.copy(),
         displacement=states[:, 0] * np.exp(1j * angle),
         outcome=outcome,
         critical_speed=critical,
