@@ -5,7 +5,7 @@ from __future__ import annotations
 import argparse
 import functools
 import sys
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -13,45 +13,82 @@ from reportgen.commands.progress import batch_progress
 from reportgen.commands.results import first_signature, options_of
 from reportgen.commands.shared import note, print_json
 from reportgen.errors import ReportgenError
-from reportgen.sheet.lines import plain
 
 if TYPE_CHECKING:
     from reportgen.commands.running import Asked
-    from reportgen.run.batch import State, Summary
+    from reportgen.run.batch import State
+    from reportgen.run.job import Options
+    from reportgen.run.outcome import Outcome, Summary
 
 INTERRUPTED = 130
 
 
 def run_batch(cases: Sequence[Asked], arguments: argparse.Namespace) -> int:
     """Run many cases; one that fails does not stop the rest."""
-    from reportgen.run.batch import run_many
+    from reportgen.run.outcome import Summary
     from reportgen.run.remembered import batch_job, store_folder
 
     options = options_of(arguments, many=True)
-    store = None if arguments.fresh else store_folder()
-    job = functools.partial(batch_job, options=options, store=store)
+    place = None if arguments.fresh else store_folder()
     signing = _Signing(arguments)
-    with batch_progress(len(cases)) as tell:
+    before = _before(cases, options, place)
+    for outcome in before.values():
+        signing(outcome.result or {})
+    rest = [case.path for case in cases if case.path not in before]
+    job = functools.partial(batch_job, options=options, store=place)
+    summary = Summary([])
+    if rest:
+        with batch_progress(len(rest)) as tell:
 
-        def on_progress(state: State) -> None:
-            tell(state)
-            if state.ended is not None and state.ended.result is not None:
-                signing(state.ended.result)
+            def on_progress(state: State) -> None:
+                tell(state)
+                if state.ended is not None and state.ended.result is not None:
+                    signing(state.ended.result)
 
-        summary = run_many(
-            job,
-            [case.path for case in cases],
-            arguments.jobs,
-            on_progress=on_progress,
-            scheduler=arguments.scheduler or "",
-            warm=options.kernel == "warm",
-        )
-    found = _told(summary, cases, signing.failed)
+            summary = _run(job, rest, arguments, options, on_progress)
+    ended = {Path(outcome.case): outcome for outcome in summary.outcomes} | before
+    summary = Summary([ended[case.path] for case in cases], summary.interrupted)
+    found = _told(summary, cases, signing.failed, arguments.json)
     if arguments.json:
         print_json(found)
     else:
         _print(found)
     return INTERRUPTED if summary.interrupted else int(found["exit_status"])
+
+
+def _before(cases: Sequence[Asked], options: Options, place: Path | None) -> dict[Path, Outcome]:
+    """Return what need not be run again, without so much as starting a pool."""
+    from reportgen.run.cache import RunStore
+    from reportgen.run.outcome import Outcome
+    from reportgen.run.remembered import described, remembered
+
+    if place is None:
+        return {}
+    found = {case.path: remembered(case.path, options, RunStore(place)) for case in cases}
+    return {
+        path: Outcome(str(path), "done", result={"exit_status": one.exit_status, **described(one)})
+        for path, one in found.items()
+        if one is not None
+    }
+
+
+def _run(
+    job: Any,
+    cases: list[Path],
+    arguments: argparse.Namespace,
+    options: Options,
+    on_progress: Callable[[State], None],
+) -> Summary:
+    from reportgen.run.batch import run_many
+
+    return run_many(
+        job,
+        cases,
+        arguments.jobs,
+        on_progress=on_progress,
+        scheduler=arguments.scheduler or "",
+        warm=options.kernel == "warm",
+    )
 
 
 class _Signing:
@@ -73,7 +110,9 @@ class _Signing:
             self.failed[result["package"]] = str(error)
 
 
-def _told(summary: Summary, cases: Sequence[Asked], unsigned: dict[str, str]) -> dict[str, Any]:
+def _told(
+    summary: Summary, cases: Sequence[Asked], unsigned: dict[str, str], as_json: bool
+) -> dict[str, Any]:
     """Return the summary with the names that the user gave, and what came to light after."""
     found = summary.as_dict()
     first: dict[str, str] = {}
@@ -86,7 +125,10 @@ def _told(summary: Summary, cases: Sequence[Asked], unsigned: dict[str, str]) ->
         if outcome["result"] is None:
             continue
         package = outcome["result"]["package"]
-        outcome["result"]["conclusion"] = plain(outcome["result"]["conclusion"])
+        if as_json:  # a heavy import, for words that are printed nowhere else
+            from reportgen.sheet.lines import plain
+
+            outcome["result"]["conclusion"] = plain(outcome["result"]["conclusion"])
         fault = unsigned.get(package, "")
         if package in first:
             fault = f"{first[package]} has the same number and revision; give each its own"

@@ -5,12 +5,12 @@ from __future__ import annotations
 import time
 import traceback
 from collections.abc import Callable, Sequence
-from dataclasses import asdict, dataclass, field
+from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
 
 from reportgen.errors import ReportgenError
-from reportgen.run.outcome import Outcome, Status
+from reportgen.run.outcome import Outcome, Status, Summary
 from reportgen.run.pools import DaskPool, HerePool, LocalPool, Pool
 
 Job = Callable[[Path], dict[str, Any]]
@@ -40,46 +40,6 @@ class State:
     failed: int
     left: int
     ended: Outcome | None = None
-
-
-@dataclass(frozen=True)
-class Summary:
-    """What became of every case, in the order given.
-
-    Parameters
-    ----------
-    outcomes
-        One for each case.
-    interrupted
-        Whether the user stopped it.
-    """
-
-    outcomes: list[Outcome]
-    interrupted: bool = False
-
-    @property
-    def exit_status(self) -> int:
-        """1 if interrupted or anything failed on its own, else 2, 3, 0 as the cases say."""
-        statuses = {outcome.error["exit_status"] for outcome in self.outcomes if outcome.error}
-        statuses |= {
-            outcome.result.get("exit_status", 0) for outcome in self.outcomes if outcome.result
-        }
-        if self.interrupted:
-            statuses.add(1)
-        return next((status for status in (1, 2, 4, 3) if status in statuses), 0)
-
-    def as_dict(self) -> dict[str, Any]:
-        """Give the machine-readable form."""
-        counts = dict.fromkeys(("done", "failed", "stopped"), 0)
-        for outcome in self.outcomes:
-            counts[outcome.status] += 1
-        return {
-            "format": 1,
-            **counts,
-            "interrupted": self.interrupted,
-            "exit_status": self.exit_status,
-            "cases": [asdict(outcome) for outcome in self.outcomes],
-        }
 
 
 def run_many(

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import functools
 import hashlib
 import json
 import os
@@ -48,29 +49,37 @@ def calculate(
     Done
         ``again`` is False where the package was there already, whole and unaltered.
     """
-    if store is None:
-        return build(case_path, options, say, finish)
-    try:
-        key = _key(case_path, options)
-    except (OSError, ReportgenError):  # what is wrong with the case, the run itself says best
-        return build(case_path, options, say, finish)
-    found = _found(store, key, case_path)
+    found = None if store is None else remembered(case_path, options, store)
     if found is not None:
         return found
     one = build(case_path, options, say, finish)
+    if store is not None:
+        _remember(one, case_path, options, store)
+    return one
+
+
+def remembered(case_path: Path, options: Options, store: RunStore) -> Done | None:
+    """Return what a case has left, if all that it depends on and its package are as they were."""
+    try:
+        key = _key(case_path, options)
+    except (OSError, ReportgenError):  # what is wrong with the case, the run itself says best
+        return None
+    return _found(store, key, case_path)
+
+
+def _remember(one: Done, case_path: Path, options: Options, store: RunStore) -> None:
     store.record(
-        key,
+        _key(case_path, options),
         {
             "package": str(one.package.resolve()),
             "tag_manifest": _digest(one.package / "tagmanifest-sha512.txt"),
             "beside": {name: _digest(case_path.parent / name) for name in one.beside},
         },
     )
-    return one
 
 
 def _key(case_path: Path, options: Options) -> str:
-    """Digest what can be told without reading the case as a case."""
+    """Digest all that can be told without reading the case as a case."""
     inputs = {
         "case": _digest(case_path),
         "name": case_path.name,
@@ -82,10 +91,15 @@ def _key(case_path: Path, options: Options) -> str:
 
         for name, content in house_files(options.house).items():
             inputs[f"house {name}"] = hashlib.sha512(content).hexdigest()
-    templates = hashlib.sha512()
+    return run_key(inputs, _our_templates())
+
+
+@functools.cache
+def _our_templates() -> str:
+    digest = hashlib.sha512()
     for path in resources.templates().values():
-        templates.update(path.read_bytes())
-    return run_key(inputs, templates.hexdigest())
+        digest.update(path.read_bytes())
+    return digest.hexdigest()
 
 
 def _found(store: RunStore, key: str, case_path: Path) -> Done | None:
