@@ -28,8 +28,8 @@ if TYPE_CHECKING:
     Floats = NDArray[np.float64]
     Complexes = NDArray[np.complex128]
 
-PER_CYCLE = 100
-_MOST_STEPS = 60_000
+PER_CYCLE = 120
+_MOST_STEPS = 80_000
 _SAME_SPEED = 2e-3  # share by which the speed may move before the matrices are made again
 
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -28,7 +28,7 @@ if TYPE_CHECKING:
 
 _ROW = 500
 _SAME = 0.02  # of the speed: peaks of one mode at several places lie closer
-_PAIRS = (3, 4, 6, 8, 10, 12, 16, 20, 24, 30, 40)
+_PAIRS = (3, 4, 5, 6, 8, 10, 12, 14, 16, 20, 24, 30, 40)
 _AGREES = 1e-3
 """Share of the largest steady amplitude by which the reduced rotor may miss the whole one."""
 
@@ -65,6 +65,7 @@ class StationSide:
     criticals: tuple[Critical, ...]
     static_loads: tuple[float | None, ...]
     forced_pairs: int | None
+    maps: dict[tuple[float, str], tuple[Floats, Floats]] = field(default_factory=dict)
 
     def steady(self, place: Place, speeds: Floats) -> Floats:
         """Return the steady amplitude (0-peak, m) at a place over speeds in rad/s."""
@@ -217,7 +218,7 @@ def _row(case: PassageCase, built: BuiltRotor) -> Floats:
     highest = max(
         *case.speeds.stated().values(), *(passage.speeds()[1] for passage in case.passages)
     )
-    top, bottom = 1.3 * highest, highest / _ROW
+    top, bottom = 2.0 * highest, highest / _ROW
     for bearing in built.rotor.bearings:
         if isinstance(bearing.coefficients, mechanics.SpeedTable):
             rows = np.asarray(bearing.coefficients.speeds)

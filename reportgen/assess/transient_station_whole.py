@@ -167,7 +167,7 @@ def station_sudden(side: StationSide, given: SuddenUnbalance, station: int) -> S
             "whole rotor by full matrices, stepped by Newmark's rule",
             float(turn_peaks(dwell.angle(whole.time), whole.time, seen)[1].max()),
             1e-2,
-            "100 steps a turn; the blow at the start rings in all modes",
+            "120 steps a turn; the blow at the start rings in all modes",
         )
     new = (*side.unbalance, added)
     after = mechanics.unbalance_response(side.model, np.array([speed]), new, side.bow)

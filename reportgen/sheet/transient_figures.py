@@ -131,7 +131,9 @@ def _levels(
 ) -> None:
     """Mark the limit of amplitude, and what the closest clearance leaves."""
     marks = [] if calc.limit is None else [("limit of amplitude", calc.limit, GREY)]
-    spare = [(c.clearance - c.used + c.peak, c.name) for c in run.contacts]
+    # only what belongs to the curve that is drawn: other places have amplitudes of their own
+    own = [c for c in run.contacts if c.id == run.highest.id or not run.highest.id]
+    spare = [(c.clearance - c.used + c.peak, c.name) for c in own]
     if spare:
         room, where = min(spare)
         marks.append((f"contact at {_folded(where, 20)}", room, RED))

@@ -56,6 +56,8 @@ def critical_speed(sheet: Sheet, calc: TransientAssessment) -> None:
         ]
         for name, speed in calc.speeds.items()
     ]
+    if calc.model == "stations":
+        rows += transient_stations.further_criticals(sheet, calc)
     sheet.table(
         "critical-speed",
         "The critical speed to be passed",

@@ -18,12 +18,13 @@ def method(sheet: Sheet, calc: TransientAssessment) -> None:
     sheet.paragraph(
         "The shaft is divided into beam elements with the mass and tilting inertia of what sits on "
         "it (Timoshenko beams, gyroscopic effect), on supports with their full matrices of "
-        "stiffness and damping. For the passages its motion is written in its own real modes, the "
-        "same number in each plane, with everything that depends on speed kept:"
+        "stiffness and damping. For the passages its motion is written in its own lowest modes, "
+        "the same number in each plane, and the shapes that it takes under a force at each support "
+        "(residual flexibility; MacNeal 1971), with everything that depends on speed kept:"
     )
     sheet.equation(
         "motion",
-        "Motion of the modes while the speed changes",
+        "Motion of modes and shapes while the speed changes",
         r"M\,\ddot{\eta} + \left[C(\Omega) + \Omega\,G\right]\dot{\eta}"
         r" + \left[K(\Omega) + \Omega\,H\right]\eta = \mathrm{Re}\left\{\left[u\left("
         r"\dot{\theta}^{2} - \mathrm{i}\,\ddot{\theta}\right) + k_b\right]"
@@ -44,6 +45,28 @@ def method(sheet: Sheet, calc: TransientAssessment) -> None:
             "afterwards: a drive that exceeds load and steady whirl at every speed passes however "
             "slowly."
         )
+
+
+def further_criticals(sheet: Sheet, calc: TransientAssessment) -> list[list[Inline]]:
+    """Return a row for every other peak of the steady response that was found."""
+    side = cast("StationFacts", calc.facts).side
+    met = calc["critical-speed"].value or 0.0
+    others = [c for c in side.criticals if abs(c.speed - met) > 0.01 * met]
+    top = sheet.show(float(side.row[-1]), "speed")
+    if not others:
+        return [["Further peaks of the steady response", f"none up to {top}"]]
+    return [
+        [
+            "Further peak of the steady response",
+            sheet.show(c.speed, "speed")
+            + (
+                ""
+                if c.amplification is None
+                else f", amplification factor {sheet.show(c.amplification, 'ratio', 3)}"
+            ),
+        ]
+        for c in others
+    ]
 
 
 def rotor(sheet: Sheet, calc: TransientAssessment) -> None:
@@ -93,8 +116,9 @@ def rotor(sheet: Sheet, calc: TransientAssessment) -> None:
             ]
             for run, one in zip(calc.runs, facts.reductions, strict=True)
         ],
-        note="Missed: largest difference between the reduced and the whole rotor's steady whirl at "
-        "the watched places over the run's speeds, as a share of the largest amplitude. "
+        note="The shape under a force at each support comes on top of the modes. Missed: largest "
+        "difference between the reduced and the whole rotor's steady whirl at the watched places "
+        "over the run's speeds, as a share of the largest amplitude. "
         + (
             "The case states the number of modes."
             if side.forced_pairs is not None

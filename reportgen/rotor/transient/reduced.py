@@ -1,4 +1,4 @@
-"""The rotor by stations reduced on its real modes at rest.
+"""The rotor by stations reduced on its real modes at rest and the shapes of its supports.
 
 The modes of each plane are those of the undamped shaft on its supports (and pedestals) at one
 reference speed, without gyroscopic effect. Gyroscopic terms, internal damping and the supports'
@@ -18,6 +18,7 @@ from dataclasses import dataclass
 
 import numpy as np
 import scipy.sparse as sp
+import scipy.sparse.linalg as spl
 
 from reportgen.errors import ModelError
 from reportgen.rotor.stations.coefficients import SpeedTable
@@ -25,6 +26,9 @@ from reportgen.rotor.stations.model import Model
 from reportgen.rotor.stations.planes import chain_sparse, lowest_roots
 from reportgen.rotor.stations.response import Bow, Unbalance, bow_shape
 from reportgen.rotor.transient.coupled import Complexes, Floats
+
+_NEW = 1e-4
+"""Share of a support's shape that must lie outside the modes, lest rounding make it up."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -36,7 +40,7 @@ class Reduced:
     model
         What was reduced.
     pairs
-        Modes kept in each plane.
+        Modes and shapes kept in each plane.
     shapes
         Deflection and slope of each mode at each mesh station, shape (2 planes, n, 2, pairs).
     pedestal_shapes
@@ -123,14 +127,18 @@ class Reduced:
 
 
 def reduce_model(model: Model, pairs: int, reference_speed: float) -> Reduced:
-    """Reduce a model on its lowest real modes, as many in each plane.
+    """Reduce a model on its lowest real modes and the shapes of forces at its supports.
+
+    The shapes that the undamped shaft takes under a force at each support are added to the modes
+    of each plane, so that strong dampers, which modes at rest follow slowly, are met as well
+    (residual flexibility; MacNeal 1971).
 
     Parameters
     ----------
     model
         The rotor by stations.
     pairs
-        Modes kept in each plane, 1 or more.
+        Modes kept in each plane, 1 or more; the shapes of the supports come on top.
     reference_speed
         Speed at which the supports' stiffness is taken for the modes [rad/s]. It changes which
         modes are kept, not what they converge to.
@@ -148,7 +156,9 @@ def reduce_model(model: Model, pairs: int, reference_speed: float) -> Reduced:
     most = 2 * model.stations - 2
     if not 1 <= pairs <= most:
         raise ModelError(f"{pairs} modes in each plane; this model has 1 to {most}")
-    planes = [_plane_modes(model, plane, pairs, reference_speed) for plane in range(2)]
+    planes = [_plane_shapes(model, plane, pairs, reference_speed) for plane in range(2)]
+    pairs = min(f.size for f, _ in planes)
+    planes = [(f[:pairs], v[:, :pairs]) for f, v in planes]
     n2, p = 2 * model.stations, model.pedestals
     vectors = [v for _, v in planes]
     shapes = np.stack([v[:n2].reshape(model.stations, 2, pairs) for v in vectors])
@@ -202,10 +212,14 @@ def _supports(model: Model, shapes: Floats, feet: Floats) -> tuple[Floats, Float
     return rows, damping, stiffness
 
 
-def _plane_modes(
+def _plane_shapes(
     model: Model, plane: int, count: int, reference_speed: float
 ) -> tuple[Floats, Floats]:
-    """Natural frequencies and mass-normalised modes of one plane, pedestals after the shaft."""
+    """Frequencies and mass-normalised shapes of one plane, pedestals after the shaft.
+
+    The lowest modes, and the shapes under a force at each support, made orthogonal to them and to
+    each other by a small eigenproblem (Ritz).
+    """
     n2, p = 2 * model.stations, model.pedestals
     K = sp.block_diag([chain_sparse(model.stiffness), sp.csc_matrix((p, p))]).tolil()
     M = sp.block_diag([chain_sparse(model.mass), sp.csc_matrix((p, p))]).tolil()
@@ -228,8 +242,24 @@ def _plane_modes(
     roots, vectors = lowest_roots(stiffness, mass, count, float(shift))
     if roots.size < count:
         raise ModelError(f"only {roots.size} modes were found in a plane, {count} were asked for")
-    norm = np.sqrt(np.einsum("ij,ij->j", vectors, mass @ vectors))
-    return np.sqrt(np.maximum(roots, 0.0)), np.asarray(vectors / norm)
+    modes = np.asarray(vectors / np.sqrt(np.einsum("ij,ij->j", vectors, mass @ vectors)))
+    nodes = [2 * support.node for support in model.supports]
+    nodes += [n2 + s.pedestal for s in model.supports if s.pedestal >= 0]
+    unit = np.zeros((n2 + p, len(nodes)))
+    unit[nodes, np.arange(len(nodes))] = 1.0
+    bent = np.asarray(spl.splu(sp.csc_matrix(stiffness - shift * mass)).solve(unit))
+    shapes = [modes]
+    for one in bent.T:
+        rest = one[:, None] / np.sqrt(one @ (mass @ one))
+        for _ in range(2):
+            for shape in shapes:
+                rest = rest - shape @ (shape.T @ (mass @ rest))
+        left = float(np.sqrt((rest.T @ (mass @ rest)).item()))
+        if left > _NEW:
+            shapes.append(rest / left)
+    basis = np.hstack(shapes)
+    squares, turned = np.linalg.eigh(basis.T @ (stiffness @ basis))
+    return np.sqrt(np.maximum(squares, 0.0)), np.asarray(basis @ turned)
 
 
 def exciting_loads(
