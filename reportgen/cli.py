@@ -78,7 +78,23 @@ def parser() -> argparse.ArgumentParser:
     check = _command(commands, "check", "read and judge a case's inputs; run nothing")
     check.add_argument("cases", nargs="+", type=Path, metavar="CASE", help="case file (YAML)")
 
+    new = _command(commands, "new", "begin a case file for a template")
+    new.add_argument("template", metavar="TEMPLATE", help="a template, see reportgen templates")
+    new.add_argument(
+        "-o", "--output", type=Path, metavar="FILE", help="file to write (default: print it)"
+    )
+    new.add_argument("--units", choices=("si", "us"), default="si", help="units (default si)")
+    new.add_argument(
+        "--sections", type=Path, metavar="CSV", help="table of shaft sections to begin from"
+    )
+    new.add_argument(
+        "--of", default="rotor.yaml", metavar="CASE", help="case that a study or comparison is of"
+    )
+
     schema = _command(commands, "schema", "print the JSON Schema of case files")
+    schema.add_argument(
+        "--family", action="store_true", help="of family files, which vary one case"
+    )
     schema.add_argument("--indent", type=int, default=2, help="spaces of indentation (default 2)")
 
     _command(commands, "templates", "list the shipped templates")

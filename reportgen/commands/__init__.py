@@ -9,6 +9,7 @@ _WHERE = {
     "run": "running",
     "check": "inputs",
     "schema": "inputs",
+    "new": "inputs",
     "templates": "inputs",
     "sign": "signing",
     "verify": "signing",
