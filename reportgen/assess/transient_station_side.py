@@ -289,9 +289,11 @@ def steady_of(side: StationSide, case: PassageCase) -> Steady:
         return max(float(side.steady(place, inside).max()) for place in probes)
 
     between = [c.speed for c in side.criticals if low < c.speed < high]
+    # as far as a margin can be asked for; what lies higher is none of the operating range's
+    far = min(1.4 * max(speeds.values()), float(side.row[-1]))
     return Steady(
-        criticals=side.criticals,
-        searched=(float(side.row[0]), float(side.row[-1])),
+        criticals=tuple(c for c in side.criticals if c.speed <= far),
+        searched=(float(side.row[0]), far),
         operating_range=(low, high),
         trip=speeds.get("trip"),
         rated=largest(np.array([rated])),
