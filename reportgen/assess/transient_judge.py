@@ -128,20 +128,21 @@ class Judging:
                 bow=contact.bow,
                 allowed=share,
                 source=source,
-                title=f"Clearance at {contact.name} during {during}",
+                title=f"Clearance at {contact.name}, closest during {during}",
             )
 
-        found: list[Applied] = []
+        found: dict[str, list[Applied]] = {}
         for run in self.runs:
             for contact in run.contacts:
                 outcome = judge(contact, run.name)
                 if not run.crossed:
                     outcome = no_passage(outcome, run)
-                found.append((outcome, f"{run.id}-contact"))
-        if self.sudden is not None:
-            found += [(judge(c, self.sudden.name), "sudden-peak") for c in self.sudden.contacts]
+                found.setdefault(contact.id, []).append((outcome, f"{run.id}-contact"))
+        for contact in () if self.sudden is None else self.sudden.contacts:
+            outcome = judge(contact, self.sudden.name if self.sudden else "")
+            found.setdefault(contact.id, []).append((outcome, "sudden-peak"))
         if found:
-            return found
+            return [worst(at_one) for at_one in found.values()]
         none = clearance_share(
             None, None, allowed=share, source=source, title="Clearance during the passages"
         )
@@ -149,7 +150,8 @@ class Judging:
 
     def _times(self, criterion: Any) -> list[Applied]:
         limit = float(criterion.limit)
-        return [(self._time(criterion, run, limit), f"{run.id}-time-above") for run in self.runs]
+        found = [(self._time(criterion, run, limit), f"{run.id}-time-above") for run in self.runs]
+        return [worst(found)]
 
     def _time(self, criterion: Any, run: TransientRun, limit: float) -> Outcome:
         places = [p for p in run.watched if p.above is not None]
@@ -162,7 +164,7 @@ class Judging:
             quantity="time",
             absent="the case states no limit of amplitude (limit:)",
             source=stated(criterion),
-            title=f"Time above the limit of amplitude{at} during {run.name}",
+            title=f"Time above the limit of amplitude{at}, longest during {run.name}",
         )
         hangs = run.hang_state.amplitude if run.hang_state is not None else 0.0
         if run.stalled and self.case.limit is not None and hangs > float(self.case.limit.amplitude):
@@ -240,6 +242,22 @@ class Judging:
             source=stated(criterion),
             title=finding.title,
         )
+
+
+_RANKS = ("does not meet", "not assessed", "meets")
+
+
+def worst(found: Sequence[Applied]) -> Applied:
+    """Return the outcome that decides over several runs: what fails first, then what is open."""
+
+    def rank(one: Applied) -> tuple[int, float]:
+        outcome = one[0]
+        left = outcome.margin
+        if left is None and outcome.value is not None and outcome.limit:
+            left = 1.0 - outcome.value / outcome.limit
+        return _RANKS.index(outcome.verdict), 0.0 if left is None else left
+
+    return min(found, key=rank)
 
 
 def no_passage(outcome: Outcome, run: TransientRun) -> Outcome:

@@ -168,6 +168,7 @@ def records(sheet: Sheet, calc: TransientAssessment) -> None:
             sheet.paragraph(f"{run.name}: the record is too short or too long for spectra.")
             continue
         figure, words = figures.waterfall_figure(sheet, run)
+        sheet.paragraph(words)
         sheet.figure(
             f"{run.id}-waterfall",
             figure,
@@ -187,6 +188,7 @@ def peak_maps(sheet: Sheet, calc: TransientAssessment) -> None:
             continue
         shown = True
         figure, words = maps.map_figure(sheet, run)
+        sheet.paragraph(words)
         sheet.figure(
             f"{run.id}-map", figure, f"{run.name}: peak of the passage against acceleration", words
         )

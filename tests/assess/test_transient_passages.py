@@ -146,7 +146,7 @@ def test_a_stall_is_named_with_its_speed_and_the_torque_it_would_take(passages: 
     assert all(verdict == "does not meet" for verdict, _ in verdicts.values() if "Ring" not in _)
     drive = verdicts["Drive torque above the least that passes, Start"]
     assert drive == ("does not meet", "with the drive as stated the rotor stalls")
-    time = verdicts["Time above the limit of amplitude during Start"]
+    time = verdicts["Time above the limit of amplitude, longest during Start"]
     assert "as long as the drive is on" in time[1]
     assert disagreeing(calc) == []
 

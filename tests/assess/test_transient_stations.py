@@ -70,7 +70,7 @@ def test_every_place_is_watched_and_the_peak_is_that_of_the_whole_rotor(passages
     assert sum(force.static for force in run.forces) > 40 * 9.8
     verdicts = {j.outcome.title: j.outcome.verdict for j in calc.judged}
     assert verdicts["Drive torque above the least that passes"] == "not assessed"
-    assert verdicts["Clearance at Ring during Ramp"] == "meets"
+    assert verdicts["Clearance at Ring, closest during Ramp"] == "meets"
 
 
 def test_a_run_below_the_critical_is_no_passage(passages: Assess) -> None:
