@@ -217,11 +217,19 @@ def payload_of(
     from reportgen.publish import publish
     from reportgen.run.environment import environment
     from reportgen.run.execute import execute
+    from reportgen.run.heartbeat import heartbeat
     from reportgen.run.normalise import notebook_bytes
 
     say(f"calculating with {template.stem}")
     try:
-        executed = execute(template, resolved, kernel=options.kernel, timeout=options.timeout)
+        with heartbeat(say) as progress:
+            executed = execute(
+                template,
+                resolved,
+                kernel=options.kernel,
+                timeout=options.timeout,
+                progress=progress,
+            )
     except CellError as error:
         if error.name == "ModelError":  # the case's values, not the tool, are at fault
             raise InputError(
