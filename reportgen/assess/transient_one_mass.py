@@ -117,7 +117,7 @@ def _prescribed(side: OneMassSide, given: PassageProgramme, run_id: str) -> Tran
                 peak_speed=float(found.speed),
                 above=None if side.limit is None else time_above(time, size, side.limit),
                 method=method,
-                second=_second(twice),
+                second=_second(twice or stepped(rotor, programme, found.time)),
                 above_second=_second_above(twice, side.limit),
             ),
         ),

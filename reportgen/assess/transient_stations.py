@@ -256,18 +256,13 @@ class Part:
 def _around(side: StationSide, programme: SpeedProgramme, highest: Watched) -> tuple[float, float]:
     """Return the piece of a run around its peak whose own beginning is forgotten at the peak.
 
-    From 15 % of speed before the peak, or so much earlier that e⁻⁸ is left of a free whirl.
+    It begins in steady whirl, so early that e⁻⁸ is left at the peak of what that is wrong by.
     """
-    times = np.linspace(programme.start_time, programme.end_time, 20_001)
-    speed = programme.speed(times)
-    away = np.abs(speed / highest.peak_speed - 1.0) > 0.15
-    outside = np.flatnonzero((times <= highest.peak_time) & away)
-    first = float(times[outside[-1]]) if outside.size else programme.start_time
     sharp = max((c.amplification or 50.0 for c in side.criticals), default=50.0)
-    memory = 8.0 * 2.0 * sharp / highest.peak_speed
-    first = max(min(first, highest.peak_time - memory), programme.start_time)
-    last = min(highest.peak_time + 8.0 * 2.0 * math.pi / highest.peak_speed, programme.end_time)
-    return first, last
+    turn = 2.0 * math.pi / highest.peak_speed
+    memory = max(8.0 * 2.0 * sharp / highest.peak_speed, 20.0 * turn)
+    first = max(highest.peak_time - memory, programme.start_time)
+    return first, min(highest.peak_time + 8.0 * turn, programme.end_time)
 
 
 def _forces(side: StationSide, run: StationRun) -> tuple[ForcePeak, ...]:

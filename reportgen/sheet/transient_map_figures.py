@@ -134,7 +134,7 @@ def torque_figure(sheet: Sheet, run: TransientRun) -> tuple[Any, str]:
     for style, (name, values) in zip(LINES, named, strict=False):
         ax.plot(x, sheet.to_reader(values, "torque"), label=name, **style)
     top = max(float(np.max(sheet.to_reader(v, "torque"))) for _, v in named)
-    ax.set_ylim(0, 1.28 * top)
+    ax.set_ylim(0, 1.12 * top)
     ax.set_xlabel(f"Speed ({sheet.unit('speed')})")
     ax.set_ylabel(f"Torque ({sheet.unit('torque')})")
     critical(sheet, ax, run, vertical=True)
@@ -168,5 +168,5 @@ def torque_figure(sheet: Sheet, run: TransientRun) -> tuple[Any, str]:
         )
     else:
         words += "drive and load torque."
-    ax.legend(loc="upper right", fontsize=_SMALL, ncols=2)
+    ax.legend(loc="lower center", bbox_to_anchor=(0.5, 1.0), fontsize=_SMALL, ncols=4)
     return figure, words
