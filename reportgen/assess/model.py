@@ -103,6 +103,7 @@ class Assessment:
     judged: tuple[Judged, ...] = ()
     cautions: tuple[Caution, ...] = CAUTIONS
     not_assessed: tuple[str, ...] = ()
+    open_points: tuple[str, ...] = ()  # what the calculation itself leaves open: holds
     _by_id: dict[str, Finding] = field(default_factory=dict, compare=False, repr=False)
 
     def __post_init__(self) -> None:

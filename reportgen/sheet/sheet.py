@@ -170,6 +170,8 @@ class Sheet:
                     "tolerance; the result may not be used until this is resolved",
                 }
             )
+        for text in assessment.open_points:
+            holds.append({"id": f"H{len(holds) + 1}", "kind": "check", "text": text})
         criteria = [self._criterion(judged) for judged in assessment.judged]
         results: Results = {
             "format": 1,

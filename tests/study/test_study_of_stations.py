@@ -7,10 +7,11 @@ from typing import Any
 import numpy as np
 import pytest
 
+from reportgen.assess.lateral_whirl import SPEEDS, Whirl
 from reportgen.case import from_resolved
 from reportgen.case.to_rotor import to_rotor
 from reportgen.rotor import stations as mechanics
-from reportgen.study.stations import SPEEDS, _Whirl, judge
+from reportgen.study.stations import judge
 from reportgen.study.study import run_study
 
 
@@ -21,7 +22,7 @@ def rotor(study_case: Any, rotor_by_stations: str) -> Any:
 
 def test_the_amplitude_is_that_of_a_dense_solve(rotor: Any) -> None:
     """Solve the whole matrices at each speed of the range, by numpy's dense solver."""
-    whirl = _Whirl(rotor, SPEEDS)
+    whirl = Whirl(rotor, SPEEDS)
     node = whirl.model.node(whirl.built.station(rotor.probes[0]))
     low, high = 2150 * np.pi / 30, 2250 * np.pi / 30
     response = whirl.responses[0]
@@ -37,7 +38,7 @@ def test_the_amplitude_is_that_of_a_dense_solve(rotor: Any) -> None:
 
 def test_the_critical_speed_is_where_a_forward_mode_is_met(rotor: Any) -> None:
     """A lightly damped peak lies near the crossing of the damped modes with the speed."""
-    (critical,) = _Whirl(rotor, SPEEDS).criticals()
+    (critical,) = Whirl(rotor, SPEEDS).criticals()
     model = mechanics.assemble(to_rotor(rotor.rotor, (*rotor.probes, *rotor.clearances)).rotor)
     chart = mechanics.campbell(model, np.linspace(200, 420, 12), 6)
     met = [c.speed for c in mechanics.synchronous_crossings(chart)]
