@@ -36,6 +36,8 @@ _NEAR = 0.06  # of the speed: a damped mode that crosses so near to a peak is th
 
 def judge(case: LateralCase) -> tuple[Judged, ...]:
     """Judge a case without second computations and charts, for comparisons and studies."""
+    if any(criterion.kind == "project limit" for criterion in case.criteria):
+        return assess(case).judged  # it may name any result
     whirl = Whirl(case, closer=2)
     static = _static(whirl)
     supports, stress, sag = _loads(whirl, static)

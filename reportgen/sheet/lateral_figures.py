@@ -85,12 +85,12 @@ def shapes_figure(sheet: Sheet, calc: LateralAssessment) -> tuple[Any, str]:
     ax.plot(x, sheet.to_reader(calc.rated_shape, "displacement"), label="at rated speed",
             **LINES[0])  # fmt: skip
     closest = math.inf
-    for place in calc.whirl.case.clearances:
+    for number, place in enumerate(calc.whirl.case.clearances):
         node = model.node(calc.whirl.built.station(place))
         size = float(sheet.to_reader(float(place.clearance), "displacement"))
         ax.plot([x[node]], [size], "v", color=INK, markersize=6)
-        ax.annotate(place.name, (x[node], size), xytext=(0, 5), textcoords="offset points",
-                    ha="center", fontsize=7.0)  # fmt: skip
+        ax.annotate(place.name, (x[node], size), xytext=(0, 5 + 9 * (number % 2)),
+                    textcoords="offset points", ha="center", fontsize=7.0)  # fmt: skip
         closest = min(closest, float(place.clearance) / max(float(calc.rated_shape[node]), 1e-12))
     ax.set_yscale("log")
     low, high = ax.get_ylim()
@@ -171,7 +171,7 @@ def campbell_figure(sheet: Sheet, calc: LateralAssessment) -> tuple[Any, str]:
     figure, (top, low) = new(2, 1, height=4.8, sharex=True, height_ratios=(2, 1))
     chart = calc.chart
     x = sheet.to_reader(chart.speeds, "speed")
-    ceiling = 2.2 * float(x[-1])
+    ceiling = 1.75 * float(x[-1])
     decrements, swings = chart.decrements
     for mode in range(chart.present.shape[0]):
         for sense, (dash, mark) in _SENSE.items():
@@ -189,7 +189,7 @@ def campbell_figure(sheet: Sheet, calc: LateralAssessment) -> tuple[Any, str]:
     top.plot(x, x, label="once per turn", color=INK, linewidth=0.9)
     top.annotate("once per turn", (x[-1], x[-1]), xytext=(-2, -10), textcoords="offset points",
                  ha="right", fontsize=7.2)  # fmt: skip
-    top.set_ylim(0.0, ceiling)
+    top.set_ylim(0.0, 1.12 * ceiling)
     low.axhline(0.0, color=RED, linewidth=0.9)
     low.set_ylim(-0.2, 2.0)
     low.text(float(x[0]), -0.04, "below: unstable", fontsize=7.2, color=RED, va="top")

@@ -99,8 +99,8 @@ def _probes(ax: Any, calc: LateralAssessment, scale: float, biggest: float) -> N
         by_node.setdefault(node, []).append(probe.name)
     for node, names in by_node.items():
         x, top = scale * float(model.positions[node]), _radius(model, node, scale)
-        ax.annotate("", (x, top), xytext=(x, top + 0.45 * biggest),
-                    arrowprops={"arrowstyle": "-|>", "color": ORANGE, "linewidth": 1.2}, zorder=6)  # fmt: skip
+        look = {"arrowstyle": "-|>", "color": ORANGE, "linewidth": 1.2}
+        ax.annotate("", (x, top), xytext=(x, top + 0.45 * biggest), arrowprops=look, zorder=6)
         ax.annotate(", ".join(names), (x, top + 0.5 * biggest), fontsize=7.2, color=ORANGE,
                     ha="center", va="bottom", zorder=6)  # fmt: skip
     for place in calc.whirl.case.clearances:

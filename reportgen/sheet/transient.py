@@ -33,7 +33,7 @@ def lead(sheet: Sheet, calc: TransientAssessment) -> list[Inline]:
             speed = sheet.show(_hangs(run), "speed")
             parts += [link, f" stalls at the critical speed and hangs at {speed}. "]
         elif not run.crossed:
-            parts += [link, " is no passage: the critical speed is not passed. "]
+            parts += [link, f" is no passage: {run.reason}. "]
         touching = [c.name for c in run.contacts if c.touches]
         if touching:
             parts += [

@@ -40,10 +40,10 @@ def method(sheet: Sheet, calc: TransientAssessment) -> None:
     )
     if any(run.drive is not None for run in calc.runs):
         sheet.paragraph(
-            "Where torques drive the run, its speed follows from drive, load and inertia. The "
-            "torque that the whirl draws is left out of that and held against the drive "
-            "afterwards: a drive that exceeds load and steady whirl at every speed passes however "
-            "slowly."
+            "Where torques drive the run, its speed follows from drive, load, inertia and the "
+            "torque that the whirl draws: its work in each turn over 2π, taken from the motion of "
+            "the round before until the run no longer changes. A drive that exceeds load and "
+            "steady whirl at every speed passes however slowly."
         )
 
 
