@@ -115,8 +115,8 @@ def _stations(case: PassageCase) -> TransientAssessment:
         sudden,
         StationFacts(side, tuple(reduction for _, reduction in found)),
         (
-            "the torque that the whirl draws while the speed follows from torques: it is held "
-            "against the drive, not coupled to it",
+            "swings of the speed within a turn: the whirl's torque is carried into the speed turn "
+            "by turn",
         )
         if any(run.drive is not None for run in runs)
         else (),

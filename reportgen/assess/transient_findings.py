@@ -174,6 +174,13 @@ def _energy(run: TransientRun) -> tuple[Finding, ...]:
     if audit is None or audit.dissipated <= 0.0:
         return ()
     second = None
+    if run.dissipated_second is None and run.watched[0].id:
+        second = SecondComputation(
+            "work of drive less load and what is stored",
+            audit.drive - audit.load - (audit.stored_end - audit.stored_start),
+            1e-2 + 1e-6 * max(audit.drive, audit.stored_start) / audit.dissipated,
+            "a difference of large energies, good to 10⁻⁶ of the largest",
+        )
     if run.dissipated_second is not None:
         second = SecondComputation(
             "sum of damping times velocity squared over the other equations' record",

@@ -29,6 +29,10 @@ if TYPE_CHECKING:
     Floats = NDArray[np.float64]
 
 _METHOD = "reduced on modes, stepped exactly"
+UNCOUPLED = (
+    "the torque that the whirl draws is not in the speed: load and whirl together leave the drive "
+    "nothing, or nearly so; whether the rotor passes is not known"
+)
 _MAP = (0.5, 1.0, 2.0, 4.0, 8.0)
 _MAP_TURNS = 1_200  # of the slowest passage of a map: a few seconds
 
@@ -57,24 +61,30 @@ def find_station_run(
         If the methods do not cover it.
     """
     run_id = f"passage-{index + 1}"
+    low, high = given.speeds()
+    pairs, missed = side.pairs(low, high)
+    reference = side.reference(low, high)
+
+    def carry(along: SpeedProgramme) -> StationRun:
+        return station_run(side.model, along, side.unbalance, side.bow, pairs, reference)
+
     torque: Driven | None = None
     programme: SpeedProgramme
     if given.drive is not None or given.coast_down is not None:
-        torque = driven(side, given)
-        programme = torque.programme
+        torque = driven(side, given, carry)
+        programme, run = torque.programme, torque.run
         kind = "drive" if given.drive is not None else "coast down"
     else:
         programme = Prescribed(to_programme(given))
+        run = carry(programme)
         kind = "ramp" if given.ramp is not None else "table"
-    low, high = programme.speeds
-    pairs, missed = side.pairs(low, high)
-    reference = side.reference(low, high)
-    run = station_run(side.model, programme, side.unbalance, side.bow, pairs, reference)
     critical = side.critical_within(low, high)
     watched = tuple(_watched(side, place, run, low, high) for place in side.places)
     highest = max(watched, key=lambda place: place.peak)
     place = next(p for p in side.places if p.id == highest.id)
-    crossed, reason = _crossed(critical, low, high, highest, run)
+    crossed, reason = _crossed(side, critical, low, high, highest, run)
+    if torque is not None and not torque.coupled:
+        crossed, reason = False, UNCOUPLED
     acceleration = _acceleration(programme, critical) if crossed else None
     watched, changed = _checked(side, programme, watched, place, pairs, reference)
     span = (float(run.time[0]), float(run.time[-1]))
@@ -107,6 +117,7 @@ def find_station_run(
             high,
         ),
         drive=None if torque is None else torque.findings,
+        audit=None if torque is None else torque.audit,
         map=None
         if acceleration is None or critical is None
         else _map(side, place, acceleration, highest.peak, critical, pairs),
@@ -161,12 +172,21 @@ def _watched(side: StationSide, place: Place, run: StationRun, low: float, high:
 
 
 def _crossed(
-    critical: float | None, low: float, high: float, highest: Watched, run: StationRun
+    side: StationSide,
+    critical: float | None,
+    low: float,
+    high: float,
+    highest: Watched,
+    run: StationRun,
 ) -> tuple[bool, str]:
     """Tell whether a run is a passage, and why not."""
     rpm = 30.0 / math.pi
     if critical is None:
-        return False, "the steady response has no peak: there is no critical speed to pass"
+        top = float(side.row[-1]) * rpm
+        return False, (
+            f"the steady response has no peak up to {top:.5g} r/min: there is no critical speed to "
+            "pass"
+        )
     if not low < critical < high:
         return False, (
             f"the critical speed {critical * rpm:.5g} r/min is not within the run's "

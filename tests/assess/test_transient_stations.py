@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -10,6 +11,8 @@ import pytest
 
 from reportgen.assess.transient_stations import turn_peaks
 from reportgen.errors import ModelError
+from reportgen.rotor import onemass
+from reportgen.rotor.transient import TorqueCurve, run_up
 
 Assess = Callable[..., Any]
 
@@ -148,3 +151,68 @@ def test_largest_sizes_of_half_turns_are_those_of_a_swept_sine() -> None:
     inner = slice(2, -2)
     assert size[inner] == pytest.approx(1.0 + 0.1 * when[inner], rel=2e-3)
     assert size.size == pytest.approx(angle[-1] / np.pi, abs=2)
+
+
+LIGHT = """\
+stations:
+  source: drawing 7
+  materials: {air: {density: 1 kg/m^3, modulus: 205 GPa, poisson: 0.29}}
+  shaft:
+    sections:
+      - {length: 0.5 m, outer diameter: 40 mm, material: air, elements: 2}
+      - {length: 0.5 m, outer diameter: 40 mm, material: air, elements: 2}
+  discs: [{name: Wheel, station: 2, mass: 40 kg, polar inertia: 1e-6 kg m^2,
+           diametral inertia: 1e-6 kg m^2}]
+  bearings:
+    - {name: DE, station: 1, stiffness: 1e11 N/m}
+    - {name: NDE, station: 3, stiffness: 1e11 N/m}
+  seals: [{name: Damper, station: 2, stiffness: 1e-3 N/m, damping: 300 N s/m}]
+planes: [{on: Wheel, amount: 20000 g mm, source: order}]
+clearances: [{name: Ring, on: Wheel, clearance: 60 mm, source: drawing}]
+"""
+TORQUE = """\
+passages:
+  - name: Start
+    drive:
+      {from: 300 rpm, to: 2200 rpm, torque: motor.csv, load: load.csv, inertia: 0.6 kg m^2,
+       source: m}
+"""
+
+
+def test_the_whirl_brakes_the_drive_as_the_coupled_one_mass_has_it(passages: Assess) -> None:
+    """Compare with the one mass whose whirl and speed are integrated together."""
+    calc = passages(TORQUE, LIGHT)
+    run, side = calc.runs[0], calc.facts.side
+    sag = side.clearances[0][3]
+    one = onemass.OneMassRotor(
+        mass=40.0,
+        stiffness=40.0 * 9.80665 / sag,
+        damping_ratio=300.0 / (2.0 * np.sqrt(40.0 * 40.0 * 9.80665 / sag)),
+        eccentricity=5e-4,
+    )
+    rpm = np.pi / 30
+    drive = TorqueCurve([0.0, 2200 * rpm], [30.0, 20.0])
+    load = TorqueCurve([0.0, 2200 * rpm], [2.0, 8.0])
+    coupled = run_up(one, 0.6, drive, load, 2200 * rpm, 300 * rpm)
+    free = run_up(replace(one, eccentricity=1e-6), 0.6, drive, load, 2200 * rpm, 300 * rpm)
+    # the whirl costs time, and the rounds find all but a little of it
+    cost = coupled.time[-1] - free.time[-1]
+    assert cost > 0.02 * free.time[-1]
+    assert run.time[-1] - free.time[-1] == pytest.approx(cost, rel=0.05)
+    assert run.watched[0].peak == pytest.approx(coupled.peak.amplitude, rel=0.01)
+    assert run.audit.dissipated == pytest.approx(coupled.audit.dissipated, rel=0.02)
+    assert run.audit.mismatch < 1e-3
+    assert calc.disagreements() == []
+
+
+def test_where_load_and_whirl_leave_nothing_the_report_says_that_it_does_not_know(
+    passages: Assess,
+) -> None:
+    weak = "speed [rpm],torque [N m]\n0,9\n2200,9\n"
+    calc = passages(TORQUE + JUDGED, LIGHT.replace("20000 g mm", "80000 g mm"), motor=weak)
+    run = calc.runs[0]
+    assert "whether the rotor passes is not known" in run.reason
+    assert run.audit is None
+    assert not run.crossed
+    verdicts = {j.outcome.title: j.outcome.verdict for j in calc.judged}
+    assert verdicts["Drive torque above the least that passes, Start"] == "not assessed"
