@@ -1,7 +1,8 @@
 """How wide a table's columns are on paper, and how tall the table becomes.
 
 Widths are estimated from the letters; the page needs no more than that to set columns
-well, and both are known before anything is set.
+well, and both are known before anything is set. All widths are in ems of the table's type
+unless points are said.
 """
 
 from __future__ import annotations
@@ -10,6 +11,7 @@ import math
 import re
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from functools import cached_property
 
 ROOM = {"a4": 476.0, "letter": 492.0}
 """Points between the margins."""
@@ -26,12 +28,13 @@ _UNIT = re.compile(
     r"|\S+"
 )
 _BREAKS = re.compile(r"(?:[^\s/-]|[/-](?=\d))+[/-]*|\S")  # no break between hyphen and digit
+_SPACE = 0.27
 _BOLD = "nn"  # about what a bold word is wider
-_FEW_LINES = 1.9  # of words beside values in one line; where words take more, values break too
-_MOST_LINES = 2.4  # before a smaller type is tried
+_MOST_KEPT, _MOST_WORD, _CHUNK = 24, 20, 5  # characters: longer words break, anywhere
+_LINES = (1, 2, 3, 4, 5, 6, 8, 10, 13, 17, 23, 30, 40)  # of the longest cell, tried in this order
+_MOST_LINES = 2  # before a smaller type is tried
 _READ_WELL = 8.5  # points: below this only where words do not fit
-_MOST_EM = 45.0  # of a cell; longer ones claim no more of the width
-_MOST_KEPT = 24  # characters that never break; a longer word may
+_LOOKED_AT = 6  # longest cells of a column; they decide
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,84 +68,125 @@ def layout(
 
     Notes
     -----
-    No column is narrower than its longest word. Room beyond that goes to where the longest
-    cell takes most lines, so that the longest cells of all columns take about as many; a
-    value with its measure stays in one line where the words beside it allow that.
+    No column is narrower than its longest word. Beyond that the columns are such that the
+    longest cells take the fewest lines, a value with its measure one line where that costs
+    the words beside it none; what is left of the width is shared out.
     """
-    room = ROOM[paper]
-    size, widths = SIZES[-1], [room / len(head) for _ in head]
+    columns = [_Column(head[n], [row[n] for row in rows], keep) for n, keep in enumerate(kept)]
+    size, widths = SIZES[-1], [1.0 for _ in columns]
     for size in SIZES:
-        widths, count = _at(size, head, rows, kept, stated, room)
-        if count <= (_MOST_LINES if size > _READ_WELL else math.inf):
+        widths, lines = _fitted(columns, stated, (ROOM[paper] - _PADDING * len(columns)) / size)
+        if lines <= (_MOST_LINES if size > _READ_WELL else _LINES[-1]):
             break
-    lines = [
-        max(
-            math.ceil(1.03 * size * em(text) / max(width - _PADDING, size))
-            for text, width in zip(row, widths, strict=True)
-        )
-        for row in (head, *rows)
-    ]
-    height = sum(max(count, 1) * size * _LINE + _GAP for count in lines)
-    return Layout(tuple(width / sum(widths) for width in widths), size, height)
+    height = size * _LINE * _lines(columns, widths) + _GAP * (len(rows) + 1)
+    points = [_PADDING + size * width for width in widths]
+    return Layout(tuple(width / sum(points) for width in points), size, height)
 
 
-def _at(
-    size: float,
-    head: Sequence[str],
-    rows: Sequence[Sequence[str]],
-    kept: Sequence[bool],
-    stated: Sequence[float | None],
-    room: float,
+class _Cell:
+    """A text as the words that a line may break between."""
+
+    def __init__(self, text: str, kept: bool) -> None:
+        self.words = list(_words(text, kept))
+        self.widest = max((width for width, _ in self.words), default=0.5)
+        self.whole = sum(width + space for width, space in self.words) or 0.5
+
+    def lines(self, width: float) -> int:
+        """Return how many lines the text takes."""
+        count, used = 1, 0.0
+        for word, space in self.words:
+            if used and used + space + word > width:
+                count, used = count + 1, word
+            else:
+                used += space + word
+        return count
+
+    def narrowest(self, lines: int) -> float:
+        """Return the least width in which the text takes no more lines than these."""
+        low, high = self.widest, self.whole
+        if lines == 1 or high <= low:
+            return max(low, high)
+        if self.lines(low) <= lines:
+            return low
+        low, high = max(low, high / lines), min(high, 2 * high / lines + low)
+        for _ in range(7):
+            middle = (low + high) / 2
+            low, high = (low, middle) if self.lines(middle) <= lines else (middle, high)
+        return high
+
+
+class _Column:
+    """A column's cells, the title first."""
+
+    def __init__(self, title: str, texts: Sequence[str], kept: bool) -> None:
+        self.kept = kept
+        self.title = _Cell(title + _BOLD, kept=False)
+        body = [_Cell(text, kept) for text in texts]
+        self.cells = [self.title, *body]
+        self.longest = sorted(body, key=lambda cell: cell.whole)[-_LOOKED_AT:]
+
+    @cached_property
+    def least(self) -> float:
+        return max(cell.widest for cell in self.cells)
+
+    def narrowest(self, lines: int) -> float:
+        return max(self.least, *(cell.narrowest(lines) for cell in self.longest), 0.0)
+
+
+def _fitted(
+    columns: Sequence[_Column], stated: Sequence[float | None], room: float
 ) -> tuple[list[float], float]:
-    """Return widths at a type size, and about how many lines the longest cells then take."""
-    columns = range(len(head))
-    least = [
-        _PADDING
-        + size * max(_least(text, kept[n]) for text in (head[n] + _BOLD, *_column(rows, n)))
-        for n in columns
-    ]
-    whole = [
-        max(least[n], *(_PADDING + size * min(em(t), _MOST_EM) for t in _column(rows, n)), 0)
-        for n in columns
-    ]
-    heads = [max(whole[n], _PADDING + size * em(head[n] + _BOLD)) for n in columns]
+    """Return widths that fill the room, and how many lines the longest cells then take."""
+    least = [column.least for column in columns]
     if sum(least) > room:
         return least, math.inf
     if given := _stated(least, stated, room):
-        return given, 1.0
-    if sum(heads) <= room:
-        spare = room / sum(heads)
-        return [width * spare for width in heads], 1.0
-    if sum(whole) <= room:
-        return _filled(whole, heads, room)[0], 1.0
-    values = [w if keep else low for low, w, keep in zip(least, whole, kept, strict=True)]
-    if sum(values) < room:
-        widths, lines = _filled(values, whole, room)
-        if lines <= _FEW_LINES:
-            return widths, lines
-    return _filled(least, whole, room)
+        return given, 1
+    for lines in _LINES:
+        broken = [column.narrowest(lines) for column in columns]
+        whole = [
+            column.narrowest(1) if column.kept else width
+            for column, width in zip(columns, broken, strict=True)
+        ]
+        for widths in (whole, broken):
+            if sum(widths) <= room:
+                return _best(widths, columns, lines, room), lines
+    return _spread(least, [column.narrowest(1) for column in columns], room), _LINES[-1]
 
 
-def _column(rows: Sequence[Sequence[str]], n: int) -> Iterator[str]:
-    return (row[n] for row in rows)
+def _lines(columns: Sequence[_Column], widths: Sequence[float]) -> int:
+    """Return how many lines all rows take together."""
+    rows = zip(*(column.cells for column in columns), strict=True)
+    return sum(max(map(_Cell.lines, row, widths)) for row in rows)
 
 
-def _filled(least: list[float], whole: list[float], room: float) -> tuple[list[float], float]:
-    """Return widths that fill the room, and about how many lines the longest cells then take."""
+def _best(widths: list[float], columns: Sequence[_Column], lines: int, room: float) -> list[float]:
+    """Share out what is left of the room in the way that gives the shortest table."""
+    titles = [column.title.whole for column in columns]
+    longest = max(range(len(columns)), key=lambda n: columns[n].narrowest(1))
+    to_longest = list(widths)
+    to_longest[longest] += room - sum(widths)
+    ways = [_spread(widths, titles, room), to_longest]
+    eased = list(widths)
+    wanted = [column.narrowest(max(lines - 1, 1)) for column in columns]
+    for n in sorted(range(len(widths)), key=lambda n: wanted[n] - widths[n]):
+        if sum(eased) - eased[n] + wanted[n] <= room:
+            eased[n] = max(eased[n], wanted[n])
+    ways.append(_spread(eased, titles, room))
+    return min(ways, key=lambda way: _lines(columns, way))
 
-    def at(lines: float) -> list[float]:
-        return [max(a, b / lines) for a, b in zip(least, whole, strict=True)]
 
-    few, many = 1.0, 1e4
-    for _ in range(50):
-        middle = math.sqrt(few * many)
-        few, many = (middle, many) if sum(at(middle)) > room else (few, middle)
-    return at(many), many
+def _spread(widths: list[float], wanted: list[float], room: float) -> list[float]:
+    """Share out what is left of the room: first to what wants more, then to all."""
+    more = [max(want - width, 0.0) for width, want in zip(widths, wanted, strict=True)]
+    share = min(1.0, (room - sum(widths)) / sum(more)) if sum(more) else 0.0
+    widened = [width + share * extra for width, extra in zip(widths, more, strict=True)]
+    return [width * room / sum(widened) for width in widened]
 
 
 def _stated(least: list[float], stated: Sequence[float | None], room: float) -> list[float]:
     """Return the widths that a template states, if it states all; none under its words."""
-    if not stated or any(share is None for share in stated):
+    if any(share is None for share in stated):
         return []
     widths = [share * room for share in stated if share is not None]
     over = [max(width - low, 0.0) for width, low in zip(widths, least, strict=True)]
@@ -151,11 +195,22 @@ def _stated(least: list[float], stated: Sequence[float | None], room: float) -> 
     return [low + scale * more for low, more in zip(least, over, strict=True)]
 
 
-def _least(text: str, kept: bool) -> float:
-    """Return the width in ems that no line break can go below."""
-    found = (piece for piece, _ in pieces(text)) if kept else iter(_BREAKS.findall(text))
-    words = [em(piece[:_MOST_KEPT] if kept else piece[:20]) for piece in found]
-    return max(words, default=0.5)
+def _words(text: str, kept: bool) -> Iterator[tuple[float, float]]:
+    """Yield the width of each word, and of the space before it."""
+    if kept:
+        for piece, whole in pieces(text):
+            yield from _broken(piece, _MOST_KEPT if whole else _CHUNK, _SPACE)
+        return
+    for word in text.split():
+        space = _SPACE
+        for part in _BREAKS.findall(word):
+            yield from _broken(part, _MOST_WORD if len(part) <= _MOST_WORD else _CHUNK, space)
+            space = 0.0
+
+
+def _broken(word: str, most: int, space: float) -> Iterator[tuple[float, float]]:
+    for start in range(0, len(word), most):
+        yield em(word[start : start + most]), 0.0 if start else space
 
 
 def pieces(text: str) -> Iterator[tuple[str, bool]]:
@@ -168,7 +223,7 @@ def pieces(text: str) -> Iterator[tuple[str, bool]]:
 
 
 def em(text: str) -> float:
-    """Return the width of a text in ems, about."""
+    """Return the width of a text, about."""
     return 1.05 * sum(map(_em, text))
 
 
