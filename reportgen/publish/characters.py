@@ -15,6 +15,7 @@ from functools import cache
 from importlib import resources
 
 _SPACES = re.compile("[\t\n\r\v\f\x85\u2028\u2029]+")
+_PLAIN = re.compile("[ -~]+")
 _JOINERS = {0x200C, 0x200D, 0xFE0E, 0xFE0F}  # shape their neighbours; harmless on screen
 _LONG = 20  # characters without a break: more may not fit a column
 _RUN = re.compile(rf"((?:[^\s\u200b/-]|[/-](?=\d)){{{_LONG + 1},}})")
@@ -78,6 +79,9 @@ def long_runs(text: str) -> Iterator[tuple[bool, str]]:
 
 
 def _pieces(text: str, told: Callable[[str], bool]) -> Iterator[tuple[bool, str]]:
+    if _PLAIN.fullmatch(text):  # nearly all texts, and ten times as fast
+        yield False, text
+        return
     run: list[str] = []
     for character in _SPACES.sub(" ", text):
         if not told(character):

@@ -11,7 +11,7 @@ import math
 import re
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cached_property, lru_cache
 
 ROOM = {"a4": 476.0, "letter": 492.0}
 """Points between the margins."""
@@ -222,6 +222,7 @@ def pieces(text: str) -> Iterator[tuple[str, bool]]:
         yield piece, len(piece) <= _MOST_KEPT
 
 
+@lru_cache(maxsize=4096)
 def em(text: str) -> float:
     """Return the width of a text, about."""
     return 1.05 * sum(map(_em, text))
