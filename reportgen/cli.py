@@ -110,6 +110,30 @@ def parser() -> argparse.ArgumentParser:
         help="certificate (PEM) of an authority to trust; may be given more than once",
     )
 
+    rerun = _command(
+        commands, "rerun", "repeat an archived calculation and compare it result by result"
+    )
+    rerun.add_argument("package", type=Path, metavar="PACKAGE", help="package folder or .zip")
+    rerun.add_argument(
+        "--trust",
+        type=Path,
+        action="append",
+        default=[],
+        metavar="FILE",
+        help="certificate (PEM) to trust; a package signed under it may run its own template",
+    )
+    rerun.add_argument(
+        "--run-archived-template",
+        action="store_true",
+        help="run the package's own template although its signature is not trusted",
+    )
+
+    zipped = _command(commands, "zip", "pack a package as one file, always the same bytes")
+    zipped.add_argument("package", type=Path, metavar="PACKAGE", help="package folder")
+    zipped.add_argument(
+        "-o", "--output", type=Path, metavar="FILE", help="file (default: PACKAGE.zip)"
+    )
+
     sign = _command(commands, "sign", "add a sign-off to a finished package")
     sign.add_argument("package", type=Path, metavar="PACKAGE", help="package folder")
     sign.add_argument("--role", required=True, choices=("prepared", "checked", "approved"))

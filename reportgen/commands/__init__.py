@@ -11,6 +11,8 @@ _WHERE = {
     "schema": "inputs",
     "new": "inputs",
     "templates": "inputs",
+    "rerun": "repeating",
+    "zip": "repeating",
     "sign": "signing",
     "verify": "signing",
     "identity": "signing",

@@ -6,6 +6,7 @@ import argparse
 import json
 import os
 import sys
+from collections.abc import Sequence
 from getpass import getpass
 from typing import TYPE_CHECKING, Any
 
@@ -72,7 +73,7 @@ def _passphrase(arguments: argparse.Namespace) -> Passphrase:
     return ask
 
 
-def print_table(caption: str, titles: tuple[str, ...], rows: list[tuple[str, ...]]) -> None:
+def print_table(caption: str, titles: tuple[str, ...], rows: Sequence[tuple[str, ...]]) -> None:
     from rich.console import Console
     from rich.table import Table
     from rich.text import Text

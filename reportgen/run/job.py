@@ -38,6 +38,8 @@ class Options:
         Longest time for one cell in s.
     replace_draft
         Whether a draft package of the same number and revision may be replaced.
+    archived
+        A shipped template as a package holds it, to be run in place of today's.
     """
 
     output: Path
@@ -46,6 +48,7 @@ class Options:
     kernel: Literal["warm", "plain"] = "plain"
     timeout: float = 600.0
     replace_draft: bool = False
+    archived: Path | None = None
 
 
 @dataclass(frozen=True)
@@ -154,6 +157,8 @@ def house_of(case: Any, case_path: Path, options: Options) -> tuple[House | None
 def template_of(case: Any, case_path: Path, options: Options) -> tuple[Path, str]:
     """Return the template's file and whether it is ours; a local one must be allowed by name."""
     ours = resources.templates()
+    if options.archived is not None:
+        return options.archived, "ours"
     if case.template in ours:
         return ours[case.template], "ours"
     local = case_path.parent / case.template
