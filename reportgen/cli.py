@@ -327,7 +327,15 @@ def _add_identity_options(command: argparse.ArgumentParser) -> None:
         "--passphrase-file",
         type=Path,
         metavar="FILE",
-        help="file that holds the passphrase; otherwise REPORTGEN_PASSPHRASE or a prompt",
+        help="file that holds the passphrase or PIN; otherwise REPORTGEN_PASSPHRASE or a prompt",
+    )
+    command.add_argument(
+        "--pkcs11", type=Path, metavar="MODULE", help="PKCS#11 module of a token to sign with"
+    )
+    command.add_argument("--token", metavar="LABEL", help="label of the token")
+    command.add_argument("--key", metavar="LABEL", help="label of its certificate and key")
+    command.add_argument(
+        "--timestamp", metavar="URL", help="time-stamping authority (RFC 3161) to ask"
     )
 
 

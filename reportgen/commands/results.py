@@ -8,7 +8,7 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, Literal
 
-from reportgen.commands.shared import identity_of, note, say
+from reportgen.commands.shared import identity_of, note, say, timestamper_of
 
 if TYPE_CHECKING:
     from reportgen.package.identity import Identity
@@ -60,7 +60,14 @@ def first_signature(
         words = "Prepared by calculation from the case file in this package."
         if signer not in known:
             known[signer] = identity_of(arguments, signer)
-        sign_package(package, "prepared", known[signer], words, signer)
+        sign_package(
+            package,
+            "prepared",
+            known[signer],
+            words,
+            signer,
+            timestamper=timestamper_of(arguments),
+        )
 
     return sign
 

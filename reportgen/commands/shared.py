@@ -13,6 +13,8 @@ from typing import TYPE_CHECKING, Any
 from reportgen.errors import InputError, Problem, ReportgenError, SignatureError
 
 if TYPE_CHECKING:
+    from pyhanko.sign.timestamps import TimeStamper
+
     from reportgen.package.identity import Identity, Passphrase
 
 PASSPHRASE = "REPORTGEN_PASSPHRASE"
@@ -46,13 +48,31 @@ def print_json(value: Any) -> None:
 
 
 def identity_of(arguments: argparse.Namespace, name: str) -> Identity:
-    """Return the identity that signs: a PKCS#12 file, or the person's own self-issued one."""
+    """Return the identity that signs: a file, a token, or the person's own self-issued one."""
     from reportgen.package import identity
 
     passphrase = _passphrase(arguments)
+    if arguments.pkcs11 is not None:
+        if not arguments.token or not arguments.key:
+            remedy = "give --token and --key, the labels of the token and of its certificate"
+            raise InputError(
+                Problem("a token is named without its labels", remedy, field="--pkcs11")
+            )
+        return identity.load_pkcs11(
+            arguments.pkcs11, arguments.token, certificate=arguments.key, pin=passphrase
+        )
     if arguments.identity is not None:
         return identity.load_pkcs12(arguments.identity, passphrase)
     return identity.self_issued_identity(name, announce=note)
+
+
+def timestamper_of(arguments: argparse.Namespace) -> TimeStamper | None:
+    """Return who is asked for the time, where the user names an authority."""
+    if arguments.timestamp is None:
+        return None
+    from reportgen.package.stamps import http_timestamper
+
+    return http_timestamper(arguments.timestamp)
 
 
 def _passphrase(arguments: argparse.Namespace) -> Passphrase:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import argparse
 
-from reportgen.commands.shared import identity_of, print_json
+from reportgen.commands.shared import identity_of, print_json, timestamper_of
 
 STATEMENTS = {
     "prepared": "Prepared by calculation from the case file in this package.",
@@ -24,6 +24,7 @@ def sign(arguments: argparse.Namespace) -> int:
         words,
         arguments.name,
         accepted_holds=arguments.accept_hold,
+        timestamper=timestamper_of(arguments),
     )
     if arguments.json:
         print_json({"role": arguments.role, "sign_off": str(path)})
