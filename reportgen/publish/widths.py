@@ -34,6 +34,7 @@ _MOST_KEPT, _MOST_WORD, _CHUNK = 24, 20, 5  # characters: longer words break, an
 _LINES = (1, 2, 3, 4, 5, 6, 8, 10, 13, 17, 23, 30, 40)  # of the longest cell, tried in this order
 _MOST_LINES = 2  # before a smaller type is tried
 _READ_WELL = 8.5  # points: below this only where words do not fit
+_TIMES, _TRIALS = 3, 4
 _LOOKED_AT = 6  # longest cells of a column; they decide
 
 
@@ -173,7 +174,34 @@ def _best(widths: list[float], columns: Sequence[_Column], lines: int, room: flo
         if sum(eased) - eased[n] + wanted[n] <= room:
             eased[n] = max(eased[n], wanted[n])
     ways.append(_spread(eased, titles, room))
-    return min(ways, key=lambda way: _lines(columns, way))
+    return _improved(min(ways, key=lambda way: _lines(columns, way)), columns)
+
+
+def _improved(widths: list[float], columns: Sequence[_Column]) -> list[float]:
+    """Move width to columns that a little more of it spares many lines."""
+    lines = _lines(columns, widths)
+    for _ in range(_TIMES):
+        tried = [way for n in range(len(columns)) for way in _moved(widths, columns, n)]
+        best = min(tried, key=lambda way: _lines(columns, way), default=widths)
+        if (fewer := _lines(columns, best)) >= lines:
+            break
+        widths, lines = best, fewer
+    return widths
+
+
+def _moved(widths: list[float], columns: Sequence[_Column], to: int) -> Iterator[list[float]]:
+    """Yield widths in which a column has enough for some of its cells to take a line less."""
+    slack = [0.0 if n == to else width - columns[n].least for n, width in enumerate(widths)]
+    spare = sum(slack)
+    enough = {
+        round(cell.narrowest(count - 1) + 0.05, 2)
+        for cell in columns[to].cells
+        if (count := cell.lines(widths[to])) > 1
+    }
+    reached = sorted(width for width in enough if 0 < width - widths[to] < spare)
+    for width in reached[:: max(1, len(reached) // _TRIALS)]:
+        taken = (width - widths[to]) / spare
+        yield [width if n == to else w - taken * slack[n] for n, w in enumerate(widths)]
 
 
 def _spread(widths: list[float], wanted: list[float], room: float) -> list[float]:
