@@ -105,29 +105,48 @@ def _read(ax: PlotAxes) -> Axes:
 
 
 def _title(ax: PlotAxes, which: Literal["x", "y"]) -> str:
-    """Return an axis' title, of the one that shares it where it is written there only."""
+    """Return an axis' title, of the one that shares it or stands in line with it if it has none."""
     shared = ax.get_shared_x_axes() if which == "x" else ax.get_shared_y_axes()
-    titles = [getattr(one, f"get_{which}label")() for one in (ax, *shared.get_siblings(ax))]
+    in_line = [one for one in ax.figure.axes if _span(one, which) == _span(ax, which)]
+    around = (ax, *shared.get_siblings(ax), *in_line)
+    titles = [getattr(one, f"get_{which}label")() for one in around]
     return next((str(title) for title in titles if title), "")
 
 
+def _span(ax: PlotAxes, which: Literal["x", "y"]) -> range | None:
+    """Return the columns (of an x axis) or rows of the grid that axes stand in."""
+    place = ax.get_subplotspec()
+    if place is None:
+        return None
+    return place.colspan if which == "x" else place.rowspan
+
+
 def _curves(ax: PlotAxes) -> list[Curve]:
+    from matplotlib.container import BarContainer
+
     found: list[Curve] = []
     for line in ax.get_lines():
         name = str(line.get_label())
         x, y = np.asarray(line.get_xdata(), float), np.asarray(line.get_ydata(), float)
-        if name.startswith("_") or x.size < 3:
-            continue
-        keep = np.unique(np.linspace(0, x.size - 1, min(x.size, _MOST_POINTS)).astype(int))
-        keep = keep[np.isfinite(x[keep]) & np.isfinite(y[keep])]
-        found.append(
-            {
-                "name": name,
-                "x": [_round(v) for v in x[keep]],
-                "y": [_round(v) for v in y[keep]],
-            }
-        )
+        if not name.startswith("_") and x.size > 2:
+            found.append(_curve(name, x, y))
+    for bars in ax.containers:
+        name = str(bars.get_label())
+        if isinstance(bars, BarContainer) and not name.startswith("_"):
+            x = np.array([bar.get_x() + bar.get_width() / 2 for bar in bars])
+            y = np.array([bar.get_height() for bar in bars])
+            found.append(_curve(name, x[y != 0], y[y != 0]))
     return found
+
+
+def _curve(name: str, x: Any, y: Any) -> Curve:
+    """Return a curve's numbers; of many points some, the extreme ones among them."""
+    finite = np.isfinite(x) & np.isfinite(y)
+    x, y = x[finite], y[finite]
+    keep = np.linspace(0, x.size - 1, min(x.size, _MOST_POINTS)).astype(int)
+    if x.size:
+        keep = np.unique(np.append(keep, [y.argmax(), y.argmin(), x.argmax(), x.argmin()]))
+    return {"name": name, "x": [_round(v) for v in x[keep]], "y": [_round(v) for v in y[keep]]}
 
 
 def _round(value: float) -> float:

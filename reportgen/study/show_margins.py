@@ -31,7 +31,10 @@ def histogram(sheet: Sheet, study: Study, chosen: list[int]) -> None:
         row = study.outcomes.margin[i]
         known = 100 * row[~np.isnan(row)]
         edges = np.histogram_bin_edges(known, BINS)
-        for keep, color, hatch in ((known >= 0, BLUE, ""), (known < 0, RED, "////")):
+        for keep, color, hatch, name in (
+            (known >= 0, BLUE, "", "met"),
+            (known < 0, RED, "////", "not met"),
+        ):
             counts, _ = np.histogram(known[keep], edges)
             if counts.any():
                 ax.bar(
@@ -43,6 +46,7 @@ def histogram(sheet: Sheet, study: Study, chosen: list[int]) -> None:
                     edgecolor=color,
                     hatch=hatch,
                     linewidth=0.6,
+                    label=f"C{i + 1} {name}",
                 )
         ax.axvline(0.0, color=INK, linewidth=1.0)
         stated = study.nominal[i].outcome.margin
