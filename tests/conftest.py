@@ -31,6 +31,11 @@ Rotor of an invented pump. A page that holds what PDF/A-3a and PDF/UA-1 ask for.
 """
 
 
+def pytest_addoption(parser: pytest.Parser) -> None:
+    """Add the option that notes outside checks; see ``tests/outside/conftest.py``."""
+    parser.addoption("--catalogue", default="", help="file to note outside checks in")
+
+
 @dataclass
 class Workshop:
     """Makes throw-away identities and small packages, signed as far as asked."""

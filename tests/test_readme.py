@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import ast
 import re
 import subprocess
 from pathlib import Path
@@ -65,3 +66,20 @@ def test_files_named_in_the_readme_exist() -> None:
         assert (ROOT / target).is_file(), target
     for case in re.findall(r"cases/[\w-]+\.yaml", README):
         assert (ROOT / case).is_file(), case
+
+
+def test_every_outside_check_has_its_row_and_says_how_its_values_were_obtained() -> None:
+    folder = Path(__file__).parent / "outside"
+    table = README.split("<!-- outside checks -->")[1].split("<!-- end of outside checks -->")[0]
+    lines = [line for line in table.splitlines() if line.startswith("| ")][2:]
+    assert len(lines) >= 50
+    for file in sorted(folder.glob("test_*.py")):
+        tree = ast.parse(file.read_text("utf-8"))
+        tests = [node.name for node in tree.body if isinstance(node, ast.FunctionDef)]
+        mine = [line for line in lines if f"(`{file.name}`)" in line]
+        assert "Obtained: " in (ast.get_docstring(tree) or ""), file.name
+        assert all(line.rstrip(" |").rsplit("| ", 1)[1] for line in mine)
+        for test in tests:
+            if test.startswith("test_"):
+                words = f"| {test.removeprefix('test_').replace('_', ' ')} |"
+                assert any(words in line for line in mine), f"{file.name}: {test}"

@@ -2,6 +2,8 @@
 
 Sources: bagit (Library of Congress), which implements RFC 8493; sha512sum of GNU coreutils.
 Neither shares code with ours; both judge the bytes on the disk.
+
+Obtained: judged by a general-purpose library and tool.
 """
 
 from __future__ import annotations

@@ -2,6 +2,8 @@
 
 3600 kg, 3000 r/min, G2.5 on the bearing planes 1500 mm and 900 mm from the mass centre.
 Tolerances are half of the last digit printed.
+
+Obtained: from memory.
 """
 
 import math

@@ -2,6 +2,8 @@
 
 Machines and the grade [mm/s] that the table puts them in; our own words for a machine must name
 it at the same grade and at no other.
+
+Obtained: read.
 """
 
 import pytest

@@ -5,6 +5,8 @@ author off a chart as 0.0012 lb·in a lb, gives 19.2 oz·in in all and 9.6 oz·i
 planes. Tolerances are half of the last digit printed, for the chart half of that of 0.0012.
 Its example 5 is left out: the value read off the chart there is 17 % above the grade's own
 formula, more than a chart excuses.
+
+Obtained: read.
 """
 
 import math

@@ -4,6 +4,8 @@ The article on rotor balance compares the rules for a compressor rotor of 1000 l
 bearings that carry 500 lb each, at 15 000 r/min: 0.13 oz·in in each plane by 4·W/N, 1.0 oz·in in
 all by grade G2.5, half of it in each plane. Units are turned by pint. Tolerances are half of
 the last digit printed.
+
+Obtained: read.
 """
 
 import math

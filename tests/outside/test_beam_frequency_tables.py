@@ -3,6 +3,8 @@
 Source: Blevins (1979), Formulas for Natural Frequency and Mode Shape, table 8-1, λL of
 the single-span beam; values from memory, checked here against the frequency equations
 (cos λ cosh λ = ±1) solved by a general-purpose root finder.
+
+Obtained: from memory.
 """
 
 from __future__ import annotations

@@ -3,6 +3,8 @@
 Source: Young & Budynas, Roark's Formulas for Stress and Strain, 7th ed., table 8.1 (concentrated
 intermediate load); Gere & Timoshenko, Mechanics of Materials, appendix G. Formulas from memory,
 evaluated here by hand for a 50 mm steel shaft on 1 m.
+
+Obtained: from memory.
 """
 
 import math

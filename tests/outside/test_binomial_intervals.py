@@ -2,6 +2,8 @@
 
 Source: Newcombe, R. G. (1998), Statistics in Medicine 17, 857-872, table I: 95 % intervals by
 Wilson's score method and by Clopper and Pearson's. From memory.
+
+Obtained: from memory.
 """
 
 from __future__ import annotations

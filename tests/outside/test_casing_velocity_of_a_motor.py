@@ -3,6 +3,8 @@
 Its example is a motor of 150 hp at 1765 r/min that drives a pump, on a rigid base: 1.4 mm/s
 r.m.s. (0.08 in/s peak) when new, 2.8 mm/s r.m.s. (0.16 in/s peak) for unrestricted operation.
 Tolerances are half of the last digit printed.
+
+Obtained: read.
 """
 
 import pint

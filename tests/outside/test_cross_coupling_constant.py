@@ -3,6 +3,8 @@
 With power in hp, speed in r/min and lengths in inches, 63·B·hp·(ρ_d/ρ_s)/(D·H·N) is the
 cross-coupled stiffness in 1000 lbf/in. Units are turned by pint; 63 is a rounded 63.025, hence
 the tolerance of half of its last digit.
+
+Obtained: from memory.
 """
 
 import math

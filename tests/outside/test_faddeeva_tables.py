@@ -2,6 +2,8 @@
 
 Source: Abramowitz & Stegun, Handbook of Mathematical Functions, table 7.8 (w(z) to six decimals),
 values from memory; NIST DLMF 7.2(ii)-(iii) and 7.5.1 for what they are values of.
+
+Obtained: from memory.
 """
 
 import cmath

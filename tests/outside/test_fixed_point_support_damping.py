@@ -5,6 +5,8 @@ Source: the argument of Ormondroyd & Den Hartog (1928) for a damped absorber, wh
 at the disc. All response curves pass one point whatever the support damping: where the curves for
 no damping and for infinite damping cross, r² = (1 + 2κ)/(2(1 + κ)), |Z| = e (1 + 2κ), κ = k_s/k.
 The best damping makes that point the peak: c_s ωₙ/k = (1 + κ)√(2κ/(1 + 2κ)).
+
+Obtained: closed form, worked out by hand.
 """
 
 import math

@@ -3,6 +3,8 @@
 A guideline for centrifugal compressors: no lateral critical speed from 15 % below any operating
 speed to 20 % above the maximum continuous speed. Checked by sorting speeds with that sentence
 alone, on a grid that holds both ends.
+
+Obtained: read.
 """
 
 import math

@@ -2,6 +2,8 @@
 
 Sources: bash, GNU coreutils, grep, OpenSSL and Poppler on this machine judge the package;
 nothing of ours takes part.
+
+Obtained: judged by general-purpose tools.
 """
 
 from __future__ import annotations

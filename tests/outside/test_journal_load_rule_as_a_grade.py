@@ -2,6 +2,8 @@
 
 It puts the rule of 4·W/N at a balance quality grade of about 0.7. Tolerance is half of the
 digit printed.
+
+Obtained: read.
 """
 
 import math

@@ -3,6 +3,8 @@
 Source: Lewis, F. M. (1932), Vibration during acceleration through a critical speed, Trans. ASME 54,
 253-261: the undamped peak grows as 3.67·√q, q = f_n²/(df/dt); coefficient from memory, its last
 digit taken as uncertain by one.
+
+Obtained: from memory.
 """
 
 import math

@@ -4,6 +4,8 @@ Sources: Sommerfeld (1902) and Kononenko (1969) for the coupled equations and th
 drive and whirl (common knowledge, written out from Lagrange's equations); the integrators Radau
 and DOP853 of scipy as a general-purpose library. Nothing here is computed by the code under test
 but what is compared.
+
+Obtained: equations from memory, computed by a general-purpose library.
 """
 
 from __future__ import annotations

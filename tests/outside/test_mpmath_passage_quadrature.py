@@ -2,6 +2,8 @@
 
 Source: computed by mpmath (tanh-sinh, 25 digits) from the convolution of the
 excitation with the impulse response; the integrand is the equation of motion's own.
+
+Obtained: computed by a general-purpose library.
 """
 
 import mpmath as mp

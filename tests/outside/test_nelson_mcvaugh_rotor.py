@@ -6,6 +6,8 @@ isotropic bearings of 4.378e7 N/m, and the whirl speeds at spin ratio 1. All fro
 that six remembered speeds agree with the remembered geometry supports both. The paper's
 element has no shear flexibility, so the shear modulus is made very large here. Tolerance
 0.7 %: the digits of the radii (three) and the paper's coarse mesh.
+
+Obtained: from memory.
 """
 
 from __future__ import annotations

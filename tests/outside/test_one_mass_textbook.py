@@ -3,6 +3,8 @@
 Source: Den Hartog, J. P., Mechanical Vibrations, 4th ed., rotating unbalance and logarithmic
 decrement; Kimball (1924) and Gunter (1966) for the onset of whirl by internal damping; formulas
 from memory, numbers worked out beside each.
+
+Obtained: from memory.
 """
 
 import math

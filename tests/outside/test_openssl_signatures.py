@@ -2,6 +2,8 @@
 
 Source: the ``openssl`` command on this machine, an implementation of RFC 5652 and RFC 5280
 that shares no code with ours; its words and exit status are the expected values.
+
+Obtained: judged by a general-purpose tool.
 """
 
 from __future__ import annotations

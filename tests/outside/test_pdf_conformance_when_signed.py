@@ -4,6 +4,8 @@ Source: page-validation (PyPI), an independent validator that passes the veraPDF
 its own account. Its rule SIGNATURE-BYTERANGE asks every signature to cover the whole file,
 which no signature but the last can once a document is signed twice (ISO 32000-1, 12.8.1
 lets later updates follow); from the second signature on this one complaint is expected.
+
+Obtained: judged by a general-purpose library.
 """
 
 from __future__ import annotations

@@ -3,6 +3,8 @@
 Source: pint (general-purpose library of units), its default registry. Values computed by
 it here. Angle has no dimension there, so that a turn and a radian need care: ``Hz`` is
 written as ``turn/s`` for it.
+
+Obtained: computed by a general-purpose library.
 """
 
 import pint

@@ -4,6 +4,8 @@ Source: any text on rigid rotors (Genta 2005, Dynamics of Rotating Systems, ch. 
 cylindrical mω² = 2k; conical I_d ω² − I_p Ω ω − 2 k a² = 0, hence critical forward
 Ω² = 2ka²/(I_d − I_p), which exists only for I_p < I_d, and backward 2ka²/(I_d + I_p).
 Values computed from these formulas.
+
+Obtained: closed form, worked out by hand.
 """
 
 from __future__ import annotations

@@ -3,6 +3,8 @@
 Source: numpy.linalg.solve and scipy.linalg.eig / eigh on full matrices assembled element
 by element in plain (x, α, y, β) coordinates. Tolerances: dense and structured results both
 carry rounding times condition (about 1e7 for the response, hence 1e-8).
+
+Obtained: computed by a general-purpose library.
 """
 
 from __future__ import annotations

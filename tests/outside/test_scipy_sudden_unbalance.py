@@ -1,6 +1,8 @@
 """Whirl after a sudden unbalance against scipy.signal.lsim, a general-purpose simulator.
 
 Values computed by ``scipy.signal.lsim`` on two real planes with sampled forces.
+
+Obtained: computed by a general-purpose library.
 """
 
 from __future__ import annotations

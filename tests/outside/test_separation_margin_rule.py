@@ -3,6 +3,8 @@
 What the rule as remembered must have of itself: the margin below the range starts from nothing
 at AF = 2.5, and both caps, 16 % and 26 %, are reached at one factor, AF = 18.5, where
 17·(1 − 1/17) is 16 exactly. Values between are worked in exact fractions by Python's library.
+
+Obtained: from memory.
 """
 
 from fractions import Fraction

@@ -3,6 +3,8 @@
 The article states the limit as √(12000/N) mil or 1.0 mil peak-to-peak, whichever is less. Its
 own example of 18 000 r/min prints 0.87 for a root that is 0.816, and is not used. The roots here
 are exact: 12000/48000 = 1/4.
+
+Obtained: read.
 """
 
 import math

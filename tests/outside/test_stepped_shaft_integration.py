@@ -3,6 +3,8 @@
 Source: moment-area / unit-load method of any strength-of-materials text, evaluated by
 scipy.integrate.quad: v(z) = ∫ M m_z /EI ds + ∫ V v_z /(κGA) ds with the unit-load moment
 m_z and shear v_z. Shear coefficient of the solid circle by Cowper (1966).
+
+Obtained: computed by a general-purpose library.
 """
 
 from __future__ import annotations

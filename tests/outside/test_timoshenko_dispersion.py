@@ -8,6 +8,8 @@ Ind. 91, 1180-1188 (equations of a rotating Timoshenko shaft). With w = W sin kz
     −κGA k W + (EI k² + κGA) Φ = ρI ω² Φ − 2ρI Ω ω Φ
 
 whose determinant is a quartic in ω, solved here by numpy.roots.
+
+Obtained: closed form from memory, solved by a general-purpose library.
 """
 
 from __future__ import annotations

@@ -2,6 +2,8 @@
 
 The values were written down for this test from memory of the standards' charts and tables, not
 read: they guard against a slip of the pen, not of memory. Tolerances are half of the last digit.
+
+Obtained: from memory.
 """
 
 import math
