@@ -89,7 +89,7 @@ def shapes_figure(sheet: Sheet, calc: LateralAssessment) -> tuple[Any, str]:
         node = model.node(calc.whirl.built.station(place))
         size = float(sheet.to_reader(float(place.clearance), "displacement"))
         ax.plot([x[node]], [size], "v", color=INK, markersize=6)
-        ax.annotate(place.name, (x[node], size), xytext=(0, 5 + 9 * (number % 2)),
+        ax.annotate(place.name, (x[node], size), xytext=(0, 5 + 10 * (number % 3)),
                     textcoords="offset points", ha="center", fontsize=7.0)  # fmt: skip
         closest = min(closest, float(place.clearance) / max(float(calc.rated_shape[node]), 1e-12))
     ax.set_yscale("log")
@@ -196,9 +196,9 @@ def campbell_figure(sheet: Sheet, calc: LateralAssessment) -> tuple[Any, str]:
     ranges(sheet, calc, top, low)
     top.set_ylabel(f"Damped frequency ({sheet.unit('speed')})")
     low.set_ylabel("Log. decrement")
-    low.set_xlabel(f"Speed ({sheet.unit('speed')})")
-    top.text(0.01, 0.98, "solid, circles: forward    dashed, squares: backward",
-             transform=top.transAxes, fontsize=7.2, va="top", color=GREY)  # fmt: skip
+    low.set_xlabel(
+        f"Speed ({sheet.unit('speed')}); solid, circles: forward whirl; dashed, squares: backward"
+    )
     onset = (
         "no mode becomes unstable over the speeds looked at"
         if calc.onset is None
