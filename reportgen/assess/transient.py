@@ -138,12 +138,7 @@ def _whole(
         findings=findings,
         judged=judging.all(),
         cautions=(*CAUTIONS[:1], *PASSAGE_CAUTIONS, *CAUTIONS[1:]),
-        not_assessed=(
-            *not_assessed,
-            "what happens beyond contact",
-            "torsional oscillation of the drive train during the run",
-            *NOT_ASSESSED,
-        ),
+        not_assessed=(*not_assessed, *NOT_ASSESSED),
         model=model,
         speeds=case.speeds.stated(),
         critical=findings[0].value,

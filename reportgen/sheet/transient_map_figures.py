@@ -112,7 +112,7 @@ def _contours(sheet: Sheet, ax: Any, found: PeakMap) -> None:
     title = f"equal peak ({sheet.unit('displacement')}){red}"
     ax.set_title(title, fontsize=_SMALL, loc="left")
     ax.set_xlabel(f"Acceleration, size ({sheet.unit('acceleration_speed')})")
-    ax.set_ylabel("Damping ratio")
+    ax.set_ylabel("Damping ratio (–)")
 
 
 def torque_figure(sheet: Sheet, run: TransientRun) -> tuple[Any, str]:
