@@ -10,7 +10,9 @@ from reportgen.rotor.transient.drive_margin import (
     least_drive_torque,
 )
 from reportgen.rotor.transient.phases import Phase
+from reportgen.rotor.transient.programme import Prescribed, Recorded
 from reportgen.rotor.transient.record import Peak
+from reportgen.rotor.transient.station_run import StationRun, station_run
 from reportgen.rotor.transient.torque import NetTorque, TorqueCurve
 from reportgen.rotor.transient.torque_result import TorqueRun
 from reportgen.rotor.transient.torque_run import (
@@ -27,6 +29,9 @@ __all__ = [
     "NetTorque",
     "Peak",
     "Phase",
+    "Prescribed",
+    "Recorded",
+    "StationRun",
     "SteadyState",
     "TorqueCurve",
     "TorqueRun",
@@ -34,6 +39,7 @@ __all__ = [
     "least_drive_torque",
     "overspeed_trip",
     "run_up",
+    "station_run",
     "steady_states",
     "torque_run",
     "whirl_torque",
