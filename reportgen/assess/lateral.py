@@ -18,7 +18,7 @@ from reportgen.assess.lateral_model import (
 )
 from reportgen.assess.lateral_whirl import Whirl
 from reportgen.assess.model import Finding, Judged, SecondComputation
-from reportgen.assess.one_mass_judge import margin_rule
+from reportgen.assess.stated_limits import margin_rule
 from reportgen.rotor import stations as mechanics
 
 if TYPE_CHECKING:

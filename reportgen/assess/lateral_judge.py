@@ -5,17 +5,15 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 from reportgen.assess.model import Finding, Judged
-from reportgen.assess.one_mass_judge import stated
+from reportgen.assess.stated_limits import project_outcome, stated
 from reportgen.criteria import (
     SOURCES,
     Outcome,
     balance_grade,
     bearing_load,
     bearing_load_share,
-    project_limit,
     shaft_stress,
 )
-from reportgen.errors import ModelError
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -64,7 +62,7 @@ class Judging:
             case "balance grade":
                 return [self._balance(criterion)]
             case "project limit":
-                return [self._project(criterion)]
+                return [project_outcome(criterion, self.findings, harmonic=True)]
             case _:
                 return self.whirl.apply(criterion)
 
@@ -107,25 +105,4 @@ class Judging:
             self.mass,
             self.whirl.high,
             source=stated(criterion, SOURCES["balance-grade"]),
-        )
-
-    def _project(self, criterion: Any) -> Outcome:
-        finding = self.findings.get(criterion.result)
-        if finding is None:
-            known = ", ".join(self.findings)
-            raise ModelError(
-                f"a project limit names the result {criterion.result!r}, which this calculation "
-                f"does not have; it has {known}"
-            )
-        return project_limit(
-            finding.value,
-            criterion.limit_si(finding.quantity),
-            sense=criterion.sense,
-            quantity=finding.quantity,
-            measure=finding.measure,
-            limit_measure=criterion.measure or finding.measure,
-            harmonic=True,
-            absent=finding.note or "the result does not exist",
-            source=stated(criterion),
-            title=finding.title,
         )

@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from reportgen.assess.one_mass_judge import margin_rule, stated
+from reportgen.assess.stated_limits import margin_rule, stated
 from reportgen.criteria import (
     Critical,
     Limit,

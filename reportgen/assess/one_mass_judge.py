@@ -5,19 +5,16 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 from reportgen.assess.model import Finding, Judged
+from reportgen.assess.stated_limits import margin_rule, project_outcome, stated
 from reportgen.criteria import (
-    AmplificationMargin,
-    FlatMargin,
-    MarginRule,
     Outcome,
     amplitude_at_speed,
     balance_grade,
     clearance_share,
-    project_limit,
     separation_margins,
     speed_above_threshold,
 )
-from reportgen.criteria.sources import SOURCES, Source, cited, project_source
+from reportgen.criteria.sources import SOURCES
 from reportgen.errors import ModelError
 from reportgen.rotor import onemass
 
@@ -68,7 +65,9 @@ class Judging:
             case "stability":
                 return [(self._stability(criterion), "instability-onset")]
             case "project limit":
-                return [(self._project(criterion), criterion.result)]
+                return [
+                    (project_outcome(criterion, self.findings, harmonic=True), criterion.result)
+                ]
             case kind:
                 raise ModelError(f"the one-mass rotor has no result for a criterion {kind!r}")
 
@@ -150,43 +149,6 @@ class Judging:
             source=stated(criterion),
             absent="the case states no internal damping" if onset is None else onset.note,
         )
-
-    def _project(self, criterion: Any) -> Outcome:
-        finding = self.findings.get(criterion.result)
-        if finding is None:
-            known = ", ".join(self.findings)
-            raise ModelError(
-                f"a project limit names the result {criterion.result!r}, which this calculation "
-                f"does not have; it has {known}"
-            )
-        return project_limit(
-            finding.value,
-            criterion.limit_si(finding.quantity),
-            sense=criterion.sense,
-            quantity=finding.quantity,
-            measure=finding.measure,
-            limit_measure=criterion.measure or finding.measure,
-            harmonic="passage" not in finding.id,
-            absent=finding.note or "the result does not exist",
-            source=stated(criterion),
-            title=finding.title,
-        )
-
-
-def margin_rule(criterion: Any) -> MarginRule:
-    """Return the separation rule that a criterion of the case names."""
-    if criterion.rule == "flat":
-        margin = float(criterion.margin)
-        return FlatMargin(margin, margin, stated(criterion))
-    return AmplificationMargin(stated(criterion, SOURCES["petroleum-separation"]))
-
-
-def stated(criterion: Any, ours: Source | None = None) -> Source:
-    """Return the source as the case states it, with what we know of it."""
-    source, clause = criterion.source or "", criterion.clause or ""
-    if ours is None:
-        return project_source(source or "not stated in the case", clause)
-    return cited(ours, standard=source, clause=clause)
 
 
 def largest_amplitude(rotor: onemass.OneMassRotor, span: Range, peak: onemass.Peak) -> float:

@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
 from reportgen.assess.model import Finding, Judged
-from reportgen.assess.one_mass_judge import margin_rule, stated
+from reportgen.assess.stated_limits import margin_rule, project_outcome, stated
 from reportgen.criteria import (
     Critical,
     Outcome,
@@ -88,7 +88,7 @@ class Judging:
             case "balance grade":
                 return [(self._balance(criterion), "")]
             case "project limit":
-                return [(self._project(criterion), criterion.result)]
+                return [(project_outcome(criterion, self.findings), criterion.result)]
             case kind:
                 raise ModelError(f"a passage has no result for a criterion {kind!r}")
 
@@ -221,26 +221,6 @@ class Judging:
             self.steady.mass,
             self.steady.grade_speed,
             source=stated(criterion, SOURCES["balance-grade"]),
-        )
-
-    def _project(self, criterion: Any) -> Outcome:
-        finding = self.findings.get(criterion.result)
-        if finding is None:
-            known = ", ".join(self.findings)
-            raise ModelError(
-                f"a project limit names the result {criterion.result!r}, which this calculation "
-                f"does not have; it has {known}"
-            )
-        return project_limit(
-            finding.value,
-            criterion.limit_si(finding.quantity),
-            sense=criterion.sense,
-            quantity=finding.quantity,
-            measure=finding.measure,
-            limit_measure=criterion.measure or finding.measure,
-            absent=finding.note or "the result does not exist",
-            source=stated(criterion),
-            title=finding.title,
         )
 
 
