@@ -156,7 +156,7 @@ class Whirl:
                 return [self._decrement(criterion)]
             case kind:
                 limit = Limit(kind.capitalize(), "at most", "ratio", stated(criterion), kind)
-                return [limit.not_assessed("the response alone does not tell")]
+                return [limit.not_assessed("a study does not judge this limit")]
 
     def _probes(self) -> list[int]:
         """Return the mesh stations of the probes, of the bearings where there are none."""
