@@ -32,7 +32,7 @@ _SPACE = 0.27
 _BOLD = "nn"  # about what a bold word is wider
 _MOST_KEPT, _MOST_WORD, _CHUNK = 24, 20, 5  # characters: longer words break, anywhere
 _LINES = (1, 2, 3, 4, 5, 6, 8, 10, 13, 17, 23, 30, 40)  # of the longest cell, tried in this order
-_MOST_LINES = 2  # before a smaller type is tried
+_WORTH = 0.85  # of a table's height: a smaller type must spare this much
 _READ_WELL = 8.5  # points: below this only where words do not fit
 _TIMES, _TRIALS = 3, 4
 _LOOKED_AT = 6  # longest cells of a column; they decide
@@ -74,14 +74,18 @@ def layout(
     the words beside it none; what is left of the width is shared out.
     """
     columns = [_Column(head[n], [row[n] for row in rows], keep) for n, keep in enumerate(kept)]
-    size, widths = SIZES[-1], [1.0 for _ in columns]
+    best: Layout | None = None
     for size in SIZES:
         widths, lines = _fitted(columns, stated, (ROOM[paper] - _PADDING * len(columns)) / size)
-        if lines <= (_MOST_LINES if size > _READ_WELL else _LINES[-1]):
+        height = size * _LINE * _lines(columns, widths) + _GAP * (len(rows) + 1)
+        points = [_PADDING + size * width for width in widths]
+        made = Layout(tuple(width / sum(points) for width in points), size, height)
+        if best is None or lines == math.inf or made.height < _WORTH * best.height:
+            best = made
+        if lines <= (1 if size > _READ_WELL else _LINES[-1]):
             break
-    height = size * _LINE * _lines(columns, widths) + _GAP * (len(rows) + 1)
-    points = [_PADDING + size * width for width in widths]
-    return Layout(tuple(width / sum(points) for width in points), size, height)
+    assert best is not None  # there is a size to try
+    return best
 
 
 class _Cell:

@@ -110,7 +110,8 @@ def _title(ax: PlotAxes, which: Literal["x", "y"]) -> str:
     in_line = [one for one in ax.figure.axes if _span(one, which) == _span(ax, which)]
     around = (ax, *shared.get_siblings(ax), *in_line)
     titles = [getattr(one, f"get_{which}label")() for one in around]
-    return next((str(title) for title in titles if title), "")
+    # what a label says beyond quantity and unit is for the drawing only
+    return next((str(title).partition(";")[0] for title in titles if title), "")
 
 
 def _span(ax: PlotAxes, which: Literal["x", "y"]) -> range | None:

@@ -158,12 +158,20 @@ def map_figure(sheet: Sheet, calc: LateralAssessment) -> tuple[Any, str]:
     handles, names = ax.get_legend_handles_labels()
     keep = [(h, n) for h, n in zip(handles, names, strict=True) if not n.startswith("mode")]
     ax.legend([h for h, _ in keep], [n for _, n in keep], loc="lower right", fontsize=7.4)
-    meets = ", ".join(sheet.show(one.speed, "speed") for one in calc.actual) or "none"
-    words = (
+    meets = ", ".join(sheet.show(one.speed, "speed") for one in calc.actual)
+    rigid = found.speeds[-1][found.found[-1]]
+    words = [
         "Undamped critical speeds against support stiffness (numbers: modes; shaded: operating "
-        f"range). On the bearings' own stiffness they are {meets}."
-    )
-    return figure, words
+        "range).",
+        f"On the bearings' own stiffness they are {meets}."
+        if meets
+        else "On the bearings' own stiffness there is none among them.",
+    ]
+    if rigid.size:
+        words.append(
+            f"On the stiffest supports drawn the lowest is {sheet.show(float(rigid[0]), 'speed')}."
+        )
+    return figure, " ".join(words)
 
 
 def campbell_figure(sheet: Sheet, calc: LateralAssessment) -> tuple[Any, str]:

@@ -132,6 +132,16 @@ def test_every_figure_tells_its_finding_in_words(name: str, visit: Visit) -> Non
 
 
 @every_demo
+def test_every_figure_has_its_data_under_titles_with_units(name: str, visit: Visit) -> None:
+    for figure in visit(name)["figures"]:
+        if not figure["curves"]:
+            assert "to scale" in figure["alt"]  # a drawing of the rotor plots no data
+            continue
+        assert all(re.match(r"\w", title) and ";" not in title for title in figure["titles"])
+        assert any(re.search(r" \(.+\)$", title) for title in figure["titles"])
+
+
+@every_demo
 def test_the_browser_prints_pages_that_say_what_they_belong_to(
     name: str, visit: Visit, run_demo: Callable[[str], Any]
 ) -> None:
@@ -142,15 +152,9 @@ def test_the_browser_prints_pages_that_say_what_they_belong_to(
     for n, page in enumerate(pages, 1):
         assert f"{about['number']} revision {about['revision']}, {running}" in page
         assert f"{n} of {len(pages)}" in page
-        assert len(page.split()) > 20
+        assert len(page.split()) > 10
     first = pages[0]
-    for part in (
-        "What was asked",
-        "Conclusion",
-        "Verdicts",
-        "Open holds",
-        about["title"].split()[0],
-    ):
+    for part in ("What was asked", "Conclusion", "Verdicts", "C1", about["title"].split()[0]):
         assert part in first, part
     assert "Contents" not in first
     for figure in printed["figures"]:

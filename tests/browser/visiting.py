@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import math
 import subprocess
 from collections.abc import Iterator
 from contextlib import contextmanager
@@ -19,6 +20,8 @@ FIGURES = """() => [...document.querySelectorAll('figure')].map((f) => ({
     alt: f.querySelector('svg').getAttribute('aria-label'),
     height: f.getBoundingClientRect().height,
     whole: getComputedStyle(f).breakInside === 'avoid',
+    titles: JSON.parse(f.querySelector('script.axes')?.textContent ?? '[]')
+        .flatMap((axes) => [axes.x[0], axes.y[0]]),
     curves: f.querySelector('script.axes') !== null}))"""
 
 
@@ -120,15 +123,16 @@ def _hover(page: Page) -> dict[str, Any]:
     axes = json.loads(figure.locator("script.axes").text_content())[0]
     rows = [line.split(",") for line in _data_of(figure).splitlines()[1:]]
     points = [(float(row[0]), float(row[1])) for row in rows if row[0]]
-    (_, x_low, x_high, _), (_, y_low, y_high, _) = axes["x"], axes["y"]
-    inside = [p for p in points if x_low <= p[0] <= x_high and y_low <= p[1] <= y_high]
+    inside = [
+        p for p in points if all(0 <= _share(v, axes[a]) <= 1 for v, a in zip(p, "xy", strict=True))
+    ]
     x, y = inside[len(inside) // 2]
     left, top, width, height = axes["box"]
+    at_x = left + _share(x, axes["x"]) * width
+    at_y = top + (1 - _share(y, axes["y"])) * height
     plot = figure.locator(".plot")
     plot.scroll_into_view_if_needed()
     box = plot.bounding_box()
-    at_x = left + (x - x_low) / (x_high - x_low) * width
-    at_y = top + (1 - (y - y_low) / (y_high - y_low)) * height
     page.mouse.move(box["x"] + at_x * box["width"], box["y"] + at_y * box["height"])
     reading = figure.locator(".reading").inner_text()
     page.mouse.move(0, 0)
@@ -139,6 +143,14 @@ def _hover(page: Page) -> dict[str, Any]:
         "reading": reading,
         "after": figure.locator(".reading").inner_text(),
     }
+
+
+def _share(value: float, axis: list[Any]) -> float:
+    """Return where a value lies along an axis, 0 to 1."""
+    _, low, high, scale = axis
+    if scale == "log":
+        value, low, high = (math.log10(max(v, 1e-300)) for v in (value, low, high))
+    return float((value - low) / (high - low))
 
 
 def _data_of(figure: Any) -> str:
