@@ -51,7 +51,12 @@ def response_figure(sheet: Sheet, calc: LateralAssessment, number: int) -> tuple
     for one in calc.criticals:
         if one.found.case != number:
             continue
-        at_speed = float(sheet.to_reader(one.found.peak.speed, "speed"))
+        peak = one.found.peak
+        half = [v for v in (peak.lower, peak.upper) if v is not None]
+        level = float(sheet.to_reader(peak.amplitude / math.sqrt(2.0), "displacement"))
+        top.plot(sheet.to_reader(np.array(half), "speed"), [level] * len(half), "D", color=RED,
+                 markersize=3.5, markerfacecolor="white", zorder=6)  # fmt: skip
+        at_speed = float(sheet.to_reader(peak.speed, "speed"))
         for ax in (top, low):
             ax.axvline(at_speed, color=RED, linewidth=0.8, linestyle=(0, (4, 2)))
         top.text(at_speed, ceiling * 0.99, f" {one.id.removeprefix('critical-')}", color=RED,
@@ -60,7 +65,8 @@ def response_figure(sheet: Sheet, calc: LateralAssessment, number: int) -> tuple
     top.set_ylabel(f"Amplitude, 0-peak ({sheet.unit('displacement')})")
     low.set_ylabel("Phase lag (°)")
     low.set_xlabel(
-        f"Speed ({sheet.unit('speed')}); shaded: operating range, hatched: margin required"
+        f"Speed ({sheet.unit('speed')}); shaded: operating range, hatched: margin required, "
+        "diamonds: half-power points"
     )
     low.set_xlim(0.0, float(x[-1]))
     top.legend(loc="upper left", fontsize=7.4, ncols=2)
