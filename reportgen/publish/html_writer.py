@@ -106,7 +106,8 @@ class HtmlWriter:
     def _table(self, table: nodes.Table) -> str:
         caption = ""
         if table.label:
-            caption = f"<caption><b>{table.label}</b> {self.inlines(table.caption)}</caption>"
+            words = f"<b>{table.label}</b> {self.inlines(table.caption)}"
+            caption = f'<caption><span class="caption">{words}</span></caption>'
         head = "".join(
             f'<th scope="col"{_role("columnheader") if table.stacks else ""} class="{c.align}">'
             f"{self.inlines(c.title)}</th>"
@@ -175,7 +176,8 @@ class HtmlWriter:
                 f'<script type="application/json" class="axes">{_json(_axes(figure))}</script>'
             )
         return (
-            f'<figure id="{figure.anchor}"><div class="plot">{svg}</div>{reading}'
+            f'<figure id="{figure.anchor}"><div class="scroll"><div class="plot">{svg}</div></div>'
+            f"{reading}"
             f"<figcaption><b>Figure {figure.number}</b> {self.inlines(figure.caption)} {data}"
             "</figcaption></figure>"
         )

@@ -79,7 +79,7 @@ def _outline(page: Page) -> list[str]:
     parts = page.locator(".body :is(h2, h3), .body caption, .body figcaption, .equation-number")
     names: list[str] = parts.evaluate_all(
         """(all) => all.map((part) => {
-            const name = part.querySelector(':scope > b');
+            const name = part.querySelector('b');
             return (name ?? part).textContent.trim().replace(/\\s+/g, ' '); })"""
     )
     return names

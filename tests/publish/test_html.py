@@ -148,3 +148,17 @@ def test_a_title_that_looks_like_a_formula_is_disarmed_in_the_data(sample: Modul
     page = Page(publish(sample.small(figure)).html.decode())
     data = next(v for v in page.values("href") if v.startswith("data:text/csv"))
     assert data.partition(",")[2].startswith("%27%3DHYPERLINK")
+
+
+@pytest.mark.parametrize(
+    ("status", "said"), [("draft", "DRAFT \\2013  not for use"), ("for issue", "for issue")]
+)
+def test_each_page_printed_from_a_browser_says_what_it_is(
+    sample: ModuleType, status: str, said: str
+) -> None:
+    about = sample.results()["document"] | {"status": status, "number": 'N"}</style>\\'}
+    page = publish(sample.small(document=about)).html.decode()
+    style = page.partition("<style>")[2].partition("</style>")[0]
+    running = f'@top-left{{content:"N\\22 \\7d \\3c \\2f style\\3e \\5c  revision B, {said}"'
+    assert running in style
+    assert ("DRAFT" in style) == (status == "draft")

@@ -65,7 +65,7 @@
     const reading = document.createElement("p");
     reading.className = "reading";
     reading.setAttribute("role", "status");
-    plot.after(reading);
+    plot.parentElement.after(reading);
     plot.tabIndex = 0;
     plot.setAttribute("role", "group");
     plot.setAttribute("aria-label", "Curves: read values with the arrow keys");
