@@ -101,6 +101,16 @@ def test_a_damaged_package_is_not_repeated(run_demo: RunDemo, tmp_path: Path) ->
     assert "case.yaml" in done.stderr
 
 
+def test_a_package_of_format_1_kept_here_is_repeated_for_good(tmp_path: Path) -> None:
+    """Kept since format 1 began; whatever the program has become, its results must come out."""
+    frozen = Path(__file__).with_name("frozen") / "CAL-0431_A.zip"
+    done = again(frozen, "--run-archived-template", "--json", home=tmp_path)
+    assert done.returncode == 0, done.stderr
+    told = json.loads(done.stdout)
+    assert told["kind"] in ("identical", "within tolerance")
+    assert len(told["results"]) >= 12
+
+
 def environment(**changes: Any) -> bytes:
     usual = {
         "code_sha512": "a",
