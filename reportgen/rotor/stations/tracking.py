@@ -26,9 +26,15 @@ class Tracks:
 
 def assurance(a: Complex, b: Complex) -> Real:
     """Modal assurance criterion |aᴴb|² / (aᴴa bᴴb) of all pairs of rows (Allemang 1982)."""
-    cross = np.abs(a.conj() @ b.T) ** 2
-    own = (np.abs(a) ** 2).sum(1)[:, None] * (np.abs(b) ** 2).sum(1)
-    return np.asarray(cross / np.maximum(own, 1e-300))
+    cross = a.conj() @ b.T
+    own = _squares(a)[:, None] * _squares(b)
+    return np.asarray((cross.real**2 + cross.imag**2) / np.maximum(own, 1e-300))
+
+
+def _squares(rows: Complex) -> Real:
+    """Sum |·|² of each row, without the roots that an absolute value takes."""
+    real, imag = np.ascontiguousarray(rows.real), np.ascontiguousarray(rows.imag)
+    return np.asarray(np.einsum("ij,ij->i", real, real) + np.einsum("ij,ij->i", imag, imag))
 
 
 def _vectors(pairs: Eigenpairs, length: float) -> Complex:
