@@ -127,6 +127,16 @@ def parser() -> argparse.ArgumentParser:
         action="store_true",
         help="run the package's own template although its signature is not trusted",
     )
+    rerun.add_argument(
+        "-o",
+        "--output",
+        type=Path,
+        metavar="DIR",
+        help="also leave the repetition in this folder, as a package that nobody signed",
+    )
+    rerun.add_argument(
+        "--timeout", type=float, default=600.0, metavar="SECONDS", help="longest time for one cell"
+    )
 
     zipped = _command(commands, "zip", "pack a package as one file, always the same bytes")
     zipped.add_argument("package", type=Path, metavar="PACKAGE", help="package folder")

@@ -106,11 +106,27 @@ class PublishError(ReportgenError):
 
 
 class PackageError(ReportgenError):
-    """A package could not be written, or would overwrite what must stay."""
+    """There is no such package, it cannot be read, or it would overwrite what must stay."""
+
+    exit_status = 2
+
+
+class DiskError(PackageError):
+    """The disk or its rights did not let a package be written; nothing is at fault with it."""
+
+    exit_status = 1
 
 
 class SignatureError(ReportgenError):
-    """An identity or a signature cannot be used."""
+    """An identity cannot be used, or the rules of signing do not allow a sign-off."""
+
+    exit_status = 2
+
+
+class SignatureNotMadeError(SignatureError):
+    """A token or a time-stamping authority did not do its part."""
+
+    exit_status = 1
 
 
 class VerificationError(ReportgenError):

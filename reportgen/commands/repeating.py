@@ -24,20 +24,31 @@ def rerun(arguments: argparse.Namespace) -> int:
         return input("run it all the same? [y/N] ").strip().lower() in ("y", "yes")
 
     anchors = [anchor for path in arguments.trust for anchor in load_anchors(path)]
-    found = repeat(arguments.package, anchors, allow, say)
+    archived, found = repeat(
+        arguments.package,
+        anchors,
+        allow,
+        say,
+        output=arguments.output,
+        timeout=arguments.timeout,
+    )
     if arguments.json:
-        print_json(found.to_json())
+        worth = {"kind": archived.kind, "headline": archived.headline}
+        print_json({"package": worth, **found.to_json()})
         return DIFFERS if found.kind == "differs" else 0
     rows = [
         (one.title, _shown(one.then), _shown(one.now), _shown(one.difference), one.kind)
         for one in found.results
     ]
-    print_table("Results and verdicts", ("result", "then", "now", "difference", ""), rows)
+    print_table("Results, verdicts and curves", ("of", "then", "now", "difference", ""), rows)
     changed = [(name,) for name, same in found.files if not same]
     if changed:
         print_table("Files whose bytes are not the same", ("file",), changed)
+    if found.reasons:
+        print("What is not the same about the two:")
     for reason in found.reasons:
         print(f"  {reason}")
+    print(archived.headline)
     print(found.headline)
     return DIFFERS if found.kind == "differs" else 0
 

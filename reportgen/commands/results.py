@@ -51,20 +51,20 @@ def first_signature(
 
     def sign(package: Path, results: dict[str, Any]) -> None:
         from reportgen.package.sign import sign_package
+        from reportgen.package.statement import DEFAULT_WORDS
 
         document = results["document"]
         if document["status"] == "draft":
             note("the case is a draft: its package is not signed")
             return
         signer = document["prepared"]["name"]
-        words = "Prepared by calculation from the case file in this package."
         if signer not in known:
             known[signer] = identity_of(arguments, signer)
         sign_package(
             package,
             "prepared",
             known[signer],
-            words,
+            DEFAULT_WORDS["prepared"],
             signer,
             timestamper=timestamper_of(arguments),
         )

@@ -6,17 +6,14 @@ import argparse
 
 from reportgen.commands.shared import identity_of, print_json, timestamper_of
 
-STATEMENTS = {
-    "prepared": "Prepared by calculation from the case file in this package.",
-    "checked": "Checked: inputs against their sources, method, results and second computations.",
-    "approved": "Approved for the use stated in the document.",
-}
-
 
 def sign(arguments: argparse.Namespace) -> int:
+    from reportgen.archive.verify import require_sound
     from reportgen.package.sign import sign_package
+    from reportgen.package.statement import DEFAULT_WORDS
 
-    words = arguments.statement or STATEMENTS[arguments.role]
+    require_sound(arguments.package)
+    words = arguments.statement or DEFAULT_WORDS[arguments.role]
     path = sign_package(
         arguments.package,
         arguments.role,

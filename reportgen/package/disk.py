@@ -18,7 +18,7 @@ from collections.abc import Iterator, Mapping
 from contextlib import contextmanager, suppress
 from pathlib import Path
 
-from reportgen.errors import PackageError
+from reportgen.errors import DiskError
 
 _FULL = {errno.ENOSPC, errno.EDQUOT, errno.EFBIG}
 _REFUSED = {errno.EROFS, errno.EACCES, errno.EPERM}
@@ -30,7 +30,7 @@ def staging(parent: Path, name: str) -> Iterator[Path]:
 
     Raises
     ------
-    PackageError
+    DiskError
         The folder cannot be made, or the disk fails or fills while it is in use.
     """
     with explained(parent):
@@ -47,7 +47,7 @@ def staging(parent: Path, name: str) -> Iterator[Path]:
 
 @contextmanager
 def explained(place: Path) -> Iterator[None]:
-    """Turn an operating-system error into a :class:`PackageError` that says what would do."""
+    """Turn an operating-system error into a :class:`DiskError` that says what would do."""
     try:
         yield
     except OSError as error:
@@ -59,7 +59,7 @@ def explained(place: Path) -> Iterator[None]:
             reason = "a file is where a folder should be; move it away or choose another folder"
         else:
             reason = error.strerror or str(error)
-        raise PackageError(f"{place}: {reason}; nothing was changed") from error
+        raise DiskError(f"{place}: {reason}; nothing was changed") from error
 
 
 def write_files(folder: Path, files: Mapping[str, bytes], mode: int = 0o666) -> None:

@@ -27,7 +27,7 @@ from cryptography.hazmat.primitives.asymmetric import ec, rsa
 from cryptography.hazmat.primitives.serialization import pkcs12
 from cryptography.x509.oid import NameOID
 
-from reportgen.errors import PackageError, SignatureError
+from reportgen.errors import PackageError, SignatureError, SignatureNotMadeError
 from reportgen.package.disk import flush_folder, write_files
 
 if TYPE_CHECKING:
@@ -278,7 +278,7 @@ def load_pkcs11(
         from pyhanko.config.pkcs11 import TokenCriteria
         from pyhanko.sign import pkcs11 as token_api  # needs an optional package
     except ImportError as error:
-        raise SignatureError(
+        raise SignatureNotMadeError(
             "signing with a token needs the package python-pkcs11: pip install 'pyHanko[pkcs11]'"
         ) from error
     secret = pin()

@@ -6,7 +6,7 @@ import json
 from collections.abc import Iterator, Mapping
 from typing import Any
 
-from reportgen.errors import PackageError
+from reportgen.errors import PackageError, VerificationError
 from reportgen.package.bag import (
     BAG_INFO,
     DECLARATION,
@@ -21,6 +21,7 @@ from reportgen.package.bag import (
     sha512,
 )
 from reportgen.package.contents import Check, Contents
+from reportgen.package.formats import current
 from reportgen.package.names import clashes, name_fault, package_name
 from reportgen.package.statement import open_holds, second_computations
 
@@ -50,25 +51,23 @@ def bag_checks(contents: Contents) -> list[Check]:
 
 
 def read_results(files: Mapping[str, bytes]) -> dict[str, Any]:
-    """Read ``results.json`` of a package.
+    """Read ``results.json`` of a package, of whatever format, as one of the current format.
 
     Raises
     ------
     PackageError
-        It is missing, no JSON, of another format, or names no document.
+        It is missing, no JSON, of a format that is not known yet, or names no document.
     """
     try:
-        results = json.loads(files[PAYLOAD + "results.json"])
+        results = current("results.json", json.loads(files[PAYLOAD + "results.json"]))
         document = results["document"]
         known = {key: document[key] for key in ("number", "revision", "status")}
-        if results["format"] != 1:
-            raise PackageError(
-                f"results.json has format {results['format']!r}; this version reads format 1"
-            )
         second_computations(results)
         open_holds(results)
     except KeyError as error:
         raise PackageError(f"results.json: {error.args[0]} is missing") from error
+    except VerificationError as error:
+        raise PackageError(str(error)) from error
     except (ValueError, TypeError, AttributeError, RecursionError) as error:
         raise PackageError(f"results.json cannot be read: {error}") from error
     if not all(isinstance(value, str) for value in known.values()):

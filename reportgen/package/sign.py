@@ -20,7 +20,7 @@ from typing import TYPE_CHECKING, Any
 from pyhanko.sign.general import SigningError
 from pyhanko.sign.timestamps import TimestampRequestError
 
-from reportgen.errors import PackageError, SignatureError
+from reportgen.errors import PackageError, SignatureError, SignatureNotMadeError
 from reportgen.package.bag import PAYLOAD, SIGNATURES, TAG_MANIFEST, sha512
 from reportgen.package.cms import sign_detached
 from reportgen.package.contents import Contents, read_folder
@@ -200,14 +200,14 @@ def _sign(
             timestamper,
         )
     except TimestampRequestError as error:
-        raise SignatureError(f"no time stamp was given: {error}") from error
+        raise SignatureNotMadeError(f"no time stamp was given: {error}") from error
     except SigningError as error:
-        raise SignatureError(f"the signature could not be made: {error}") from error
+        raise SignatureNotMadeError(f"the signature could not be made: {error}") from error
     except Exception as error:
         # The package for tokens is optional, so its errors have no name here.
         if type(error).__module__.startswith("pkcs11"):
             reason = f"the token refused to sign ({type(error).__name__}); is it still there?"
-            raise SignatureError(reason) from error
+            raise SignatureNotMadeError(reason) from error
         raise
     return files
 

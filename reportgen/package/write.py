@@ -60,8 +60,10 @@ def write_package(
     Raises
     ------
     PackageError
-        A package of this name holds something else (the error names what changed), or the
-        folder cannot be written. Whatever was there before is still there, unchanged.
+        A package of this name holds something else; the error names what changed. Whatever
+        was there before is still there, unchanged.
+    DiskError
+        The folder cannot be written, or the disk is full; the same holds.
     """
     if (fault := name_fault(name)) or "/" in name or name.startswith("."):
         raise PackageError(f"{name!r} cannot name a package: {fault or 'use package_name'}")

@@ -37,6 +37,10 @@ choose it, and figures would lose their pictures without a word. No log: a kerne
 once complains on the user's terminal of the interrupt that its manager sends first.
 """
 
+_KEPT_BACK = (
+    "PYTHONSTARTUP", "MPLBACKEND", "JPY_PARENT_PID", "JPY_SESSION_NAME", "REPORTGEN_PASSPHRASE",
+)  # fmt: skip
+
 PROVISIONER = "reportgen-warm"
 """Name of the provisioner of warm kernels among the entry points of jupyter_client."""
 
@@ -103,13 +107,10 @@ def kernel_environment(root: Path) -> dict[str, str]:
     Returns
     -------
     dict[str, str]
-        This process's environment without what would run a user's code or change figures.
+        This process's environment without what would run a user's code or change figures, and
+        without the passphrase of the identity, which no notebook needs.
     """
-    environment = {
-        name: value
-        for name, value in os.environ.items()
-        if name not in ("PYTHONSTARTUP", "MPLBACKEND", "JPY_PARENT_PID", "JPY_SESSION_NAME")
-    }
+    environment = {name: value for name, value in os.environ.items() if name not in _KEPT_BACK}
     environment.update(ONE_THREAD)
     environment["PYTHONHASHSEED"] = "0"
     environment["IPYTHONDIR"] = str(root / "ipython")

@@ -223,7 +223,7 @@ BAG = {
                 ).encode()
             },
         ),
-        "has format 2; this version reads format 1",
+        "format 2 was written by a later version",
     ),
     "results that name no document": (
         lambda p: repack(p, **{"results.json": b'{"format": 1, "document": {}}'}),

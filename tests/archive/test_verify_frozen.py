@@ -6,12 +6,15 @@ roots of the signer and of the time stamper of ``anchored.zip``.
 
 from __future__ import annotations
 
+import json
 from datetime import UTC, datetime
 from pathlib import Path
 
 import pytest
 
-from reportgen.archive.verify import load_anchors, verify_package
+from reportgen.archive.agreement import agreement
+from reportgen.archive.verify import load_anchors, read_package, verify_package
+from reportgen.package import formats
 
 FROZEN = Path(__file__).with_name("frozen")
 NOW = [datetime(2026, 3, 5, tzinfo=UTC), datetime(2046, 3, 5, tzinfo=UTC)]
@@ -37,6 +40,36 @@ def test_a_frozen_package_is_judged_as_ever(name, now):
     told = " | ".join(f"{fault.subject}: {fault.detail}" for fault in found.faults)
     assert words in told
     assert bool(told) is not ok
+
+
+@pytest.fixture
+def _a_later_format(monkeypatch):
+    """Read as a version would that works with a format 2, of which there is none yet."""
+
+    def from_1(results):
+        document = {**results["document"], "titles": [results["document"].get("title", "")]}
+        return {**results, "format": 2, "document": document}
+
+    monkeypatch.setattr(formats, "CURRENT", 2)
+    monkeypatch.setitem(formats.MIGRATIONS, 1, from_1)
+
+
+@pytest.mark.usefixtures("_a_later_format")
+@pytest.mark.parametrize("name", VERDICTS)
+def test_a_version_of_a_later_format_judges_format_1_alike(name):
+    test_a_frozen_package_is_judged_as_ever(name, NOW[1])
+
+
+@pytest.mark.usefixtures("_a_later_format")
+def test_a_version_of_a_later_format_compares_its_results_with_those_of_format_1():
+    whole = Path(__file__).parents[1] / "run" / "frozen" / "CAL-0431_A.zip"
+    then = read_package(whole).below("data/")
+    later = json.loads(then["results.json"])
+    later["format"] = 2
+    later["results"][0]["value"] *= 1.01
+    found = agreement(then, {**then, "results.json": json.dumps(later).encode()})
+    assert [one.id for one in found.results if one.kind == "differs"] == ["critical-speed"]
+    assert len(found.results) >= 12
 
 
 def test_every_frozen_package_has_a_verdict():

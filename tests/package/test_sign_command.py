@@ -17,7 +17,7 @@ import pytest
         (["--pkcs11", "none.so"], 2, "--token and --key"),
         (["--pkcs11", "none.so", "--token", "a", "--key", "b"], 1, "python-pkcs11"),
         (["--timestamp", "http://127.0.0.1:9/"], 1, "time"),
-        (["--timestamp", "ftp://127.0.0.1/"], 1, "http"),
+        (["--timestamp", "ftp://127.0.0.1/"], 2, "http"),
     ],
 )
 def test_what_cannot_sign_says_so_and_leaves_the_package_as_it_was(

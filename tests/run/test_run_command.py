@@ -138,7 +138,7 @@ def test_two_cases_of_one_number_and_revision_are_not_both_done(folder: Path) ->
     shutil.copy(folder / "booster-fan.yaml", folder / "other.yaml")
     out = folder / "reports"
     done = run(folder / "booster-fan.yaml", folder / "other.yaml", "-o", out, home=folder)
-    assert done.returncode == 1
+    assert done.returncode == 2
     assert "this number and revision is there already" in done.stderr
     assert "1 done, 1 failed" in done.stdout
 

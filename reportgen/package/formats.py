@@ -1,4 +1,4 @@
-"""Formats of archived files: every one that was ever written can be read."""
+"""Formats of archived results: every one that was ever written can be read."""
 
 from __future__ import annotations
 
@@ -8,10 +8,13 @@ from typing import Any
 from reportgen.errors import VerificationError
 
 CURRENT = 1
-"""Format of ``results.json`` and case files that this version writes."""
+"""Format of ``results.json`` that this version writes and works with."""
 
 MIGRATIONS: dict[int, Callable[[Mapping[str, Any]], Mapping[str, Any]]] = {}
-"""By format, what turns a file of it into one of the next; a chain leads to the current one."""
+"""By format, what turns results of it into results of the next; a chain leads to the current one.
+
+Each must keep what signatures stand on: number, revision and status of the document, the open
+holds, and which second computations agreed."""
 
 
 def current(name: str, data: Mapping[str, Any]) -> Mapping[str, Any]:
