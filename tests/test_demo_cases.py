@@ -172,7 +172,7 @@ def test_a_changed_case_under_the_same_revision_is_refused(run_demo: Run, tmp_pa
     changed = tmp_path / "circulating-pump.yaml"
     changed.write_text(demo.case.read_text().replace("rated: 1480 rpm", "rated: 1485 rpm"))
     done = reportgen("run", str(changed), "-o", str(out), home=tmp_path)
-    assert done.returncode == 1
+    assert done.returncode == 2
     assert "speeds.rated" in done.stderr
     assert "Traceback" not in done.stderr
 

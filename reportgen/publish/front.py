@@ -18,6 +18,10 @@ _HOLD_KINDS = {
     "check": "check",
     "data": "data",
 }
+_ORIGINS = {
+    "ours": ", shipped with reportgen and unmodified",
+    "local": ", a local one that is not shipped with reportgen",
+}
 _ROLES = (("prepared", "Prepared"), ("checked", "Checked"), ("approved", "Approved"))
 _NOBODY = "nobody named"
 _STANDS = (
@@ -238,6 +242,7 @@ def closing(
     yield numbering.section(1, "", text("About this document"))
     made = (
         f"Made from the template {template.get('name') or 'without a name'}"
+        + _ORIGINS.get(template.get("origin", ""), "")
         + (f" (digest {template['digest']})" if template.get("digest") else "")
         + ". The HTML and the PDF come from one calculation and hold the same numbers, "
         "tables, figures and equations under the same numbers."

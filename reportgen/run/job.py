@@ -17,6 +17,10 @@ from reportgen.errors import CellError, InputError, Problem, RunError
 if TYPE_CHECKING:
     from reportgen.publish import House
 
+_ORIGINS = {
+    "ours": "shipped with reportgen, unmodified",
+    "local": "local, not shipped with reportgen",
+}
 _SHOWN_VERSIONS = ("numpy", "scipy", "matplotlib", "papermill", "nbconvert", "typst")
 
 
@@ -155,11 +159,24 @@ def house_of(case: Any, case_path: Path, options: Options) -> tuple[House | None
 
 
 def template_of(case: Any, case_path: Path, options: Options) -> tuple[Path, str]:
-    """Return the template's file and whether it is ours; a local one must be allowed by name."""
+    """Return the template's file and whether it is ours, unmodified, or local.
+
+    A local one must be allowed by name.
+    """
     ours = resources.templates()
     if options.archived is not None:
         return options.archived, "ours"
     if case.template in ours:
+        if not resources.as_shipped(ours[case.template]):
+            raise InputError(
+                Problem(
+                    f"the installed template {case.template!r} is not as it was shipped",
+                    "install reportgen again, or put the changed notebook beside the case under "
+                    "a name of its own and allow it by that name",
+                    file=str(case_path),
+                    field="template",
+                )
+            )
         return ours[case.template], "ours"
     local = case_path.parent / case.template
     if local.name not in options.allow_templates:
@@ -189,7 +206,7 @@ def provenance(
 ) -> dict[str, str]:
     """Return what made the report, as printed in it: names, versions and digests only."""
     record = {
-        "Template": f"{template['name']} ({template['origin']})",
+        "Template": f"{template['name']} ({_ORIGINS[template['origin']]})",
         "Template, SHA-512": _short(template["digest"].removeprefix("sha512:")),
         f"Case file {case_path.name}, SHA-512": _short(
             hashlib.sha512(case_path.read_bytes()).hexdigest()

@@ -62,6 +62,8 @@ def test_a_fresh_package_is_repeated_byte_for_byte(run_demo: RunDemo, tmp_path: 
     assert all(told["files"].values())
     assert len(told["results"]) >= 8
     assert payload(package) == before
+    page = before["report.html"].decode()
+    assert "one-mass-whirl, shipped with reportgen and unmodified (digest sha512:" in page
 
 
 def test_a_result_that_is_not_what_the_inputs_give_is_found(

@@ -42,9 +42,13 @@ def folder(tmp_path: Path) -> Path:
 
 
 def run(folder: Path, *more: str) -> subprocess.CompletedProcess[str]:
-    words = ["run", str(folder / "case.yaml"), "-o", str(folder / "out"), *more]
+    return reportgen(folder, "run", folder / "case.yaml", "-o", folder / "out", *more)
+
+
+def reportgen(folder: Path, *words: object) -> subprocess.CompletedProcess[str]:
     return subprocess.run(
-        [sys.executable, "-m", "reportgen.cli", *words],
+        [sys.executable, "-m", "reportgen.cli", *map(str, words)],
+        stdin=subprocess.DEVNULL,
         capture_output=True,
         text=True,
         env={**os.environ, "REPORTGEN_HOME": str(folder)},
@@ -67,6 +71,26 @@ def test_a_template_of_ones_own_must_be_allowed_and_is_told_from_ours(folder: Pa
     assert results["criteria"][0]["verdict"] == "does not meet"
     assert results["template"]["origin"] == "local"
     page = (data / "report.html").read_text(encoding="utf-8")
-    assert "local" in page
+    assert "sag.ipynb, a local one that is not shipped with reportgen" in page
     assert results["template"]["digest"].removeprefix("sha512:")[:20] in page
     assert (data / "template.ipynb").read_bytes() == (folder / "sag.ipynb").read_bytes()
+
+    repeated_only_if_trusted(folder)
+
+
+def repeated_only_if_trusted(folder: Path) -> None:
+    package = folder / "out" / "CAL-0003_A"
+    refused = reportgen(folder, "rerun", package)
+    assert refused.returncode == 2
+    assert "sag.ipynb is a template of the package's own" in refused.stderr
+    anchor = folder / "body.pem"
+    anchor.write_text(reportgen(folder, "identity", "--name", "N. Body", "--pem").stdout)
+    done = reportgen(folder, "rerun", package, "--trust", anchor)
+    assert done.returncode == 0, done.stderr
+    assert done.stdout.splitlines()[-1].startswith("identical:")
+
+    stranger = folder / "stranger.pem"
+    stranger.write_text(reportgen(folder, "identity", "--name", "A. Stranger", "--pem").stdout)
+    untrusted = reportgen(folder, "rerun", package, "--trust", stranger)
+    assert untrusted.returncode == 4
+    assert "not signed under the trust anchors" in untrusted.stderr
