@@ -46,8 +46,15 @@ def made(case: Path, arguments: argparse.Namespace) -> Any:
 def first_signature(
     arguments: argparse.Namespace,
 ) -> Callable[[Path, dict[str, Any]], None]:
-    """Return what signs a fresh package as prepared; a draft stays unsigned, and that is said."""
+    """Return what signs a fresh package as prepared; a draft stays unsigned, and that is said.
+
+    An identity that is named is opened here, before anything is calculated: a wrong passphrase
+    is told at once.
+    """
     known: dict[str, Identity] = {}
+    named = arguments.identity is not None or arguments.pkcs11 is not None
+    stated = identity_of(arguments, "") if named else None
+    timestamper = timestamper_of(arguments)
 
     def sign(package: Path, results: dict[str, Any]) -> None:
         from reportgen.package.sign import sign_package
@@ -59,14 +66,14 @@ def first_signature(
             return
         signer = document["prepared"]["name"]
         if signer not in known:
-            known[signer] = identity_of(arguments, signer)
+            known[signer] = stated or identity_of(arguments, signer)
         sign_package(
             package,
             "prepared",
             known[signer],
             DEFAULT_WORDS["prepared"],
             signer,
-            timestamper=timestamper_of(arguments),
+            timestamper=timestamper,
         )
 
     return sign

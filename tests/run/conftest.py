@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
@@ -45,3 +46,32 @@ def _no_parent_left() -> Iterator[None]:
 
     yield
     close_warm()
+
+
+README = Path(__file__).resolve().parents[2] / "README.md"
+SAG = """\
+reportgen: 1
+template: sag.ipynb
+document: {number: CAL-0003, title: Sag of a test rotor, revision: A, status: for review,
+  date: 2026-05-04, prepared: {name: N. Body}}
+machine: {name: Test rotor, orientation: horizontal}
+units: si
+inputs:
+  mass: {value: 62 kg, quantity: mass, source: drawing 7}
+  stiffness: {value: 2e6 N/m, quantity: stiffness, source: beam calculation}
+  allowed: {value: 0.2 mm, quantity: displacement, source: project specification}
+"""
+
+
+@pytest.fixture
+def sag_folder(tmp_path: Path) -> Path:
+    """Give a folder with the README's template and a case for it."""
+    part = README.read_text(encoding="utf-8").split("### A template of one's own\n")[1]
+    cells = re.findall(r"```python\n(.*?)```", part.split("\n## ")[0], re.DOTALL)
+    notebook = nbformat.v4.new_notebook(cells=[nbformat.v4.new_code_cell(c) for c in cells])
+    notebook.metadata["kernelspec"] = {"name": "python3", "display_name": "Python 3"}
+    notebook.cells[0].metadata["tags"] = ["parameters"]
+    notebook.cells.insert(1, nbformat.v4.new_markdown_cell("# Sag\n\nA desk check."))
+    nbformat.write(notebook, tmp_path / "sag.ipynb")
+    (tmp_path / "case.yaml").write_text(SAG)
+    return tmp_path
