@@ -37,6 +37,7 @@ def payload_changes(old: Mapping[str, bytes], new: Mapping[str, bytes]) -> list[
 def _field_lines(old: bytes, new: bytes) -> list[str]:
     try:
         pairs = list(field_changes(json.loads(old), json.loads(new)))
+        pairs.sort(key=lambda pair: pair[0].startswith("provenance"))  # digests lead nowhere
     except ValueError:
         return []
     lines = [f"inputs.json: {path}: {before} → {after}" for path, before, after in pairs]

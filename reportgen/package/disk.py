@@ -62,6 +62,16 @@ def explained(place: Path) -> Iterator[None]:
         raise DiskError(f"{place}: {reason}; nothing was changed") from error
 
 
+def require_writable(folder: Path) -> None:
+    """Raise ``OSError`` if a folder, or the one it would be made in, cannot be written to."""
+    there = next(place for place in (folder, *folder.absolute().parents) if place.exists())
+    if not there.is_dir():
+        raise NotADirectoryError(errno.ENOTDIR, os.strerror(errno.ENOTDIR), str(there))
+    effective = os.access in os.supports_effective_ids
+    if not os.access(there, os.W_OK | os.X_OK, effective_ids=effective):
+        raise PermissionError(errno.EACCES, os.strerror(errno.EACCES), str(there))
+
+
 def write_files(folder: Path, files: Mapping[str, bytes], mode: int = 0o666) -> None:
     """Write files that do not exist yet under ``folder`` and flush them and their folders."""
     folders = {folder}

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Collection, Mapping
 from pathlib import Path
 
 from reportgen.errors import PackageError
@@ -13,6 +13,7 @@ from reportgen.package.disk import (
     clear_leftovers,
     explained,
     move_into_place,
+    require_writable,
     staging,
     swap_into_place,
     write_files,
@@ -92,17 +93,49 @@ def write_package(
     return target
 
 
-def _stands(target: Path, payload: Mapping[str, bytes], replace_draft: bool) -> bool:
+def require_place(
+    out_dir: Path, name: str, known: Mapping[str, bytes], *, replace_draft: bool = False
+) -> None:
+    """Refuse before anything is calculated what :func:`write_package` would refuse after it.
+
+    Parameters
+    ----------
+    out_dir, name, replace_draft
+        As for :func:`write_package`.
+    known
+        Payload files that are known already, such as the inputs.
+
+    Raises
+    ------
+    PackageError
+        A package of this name is there that these files do not belong to.
+    DiskError
+        The folder cannot be written to.
+    """
+    target = Path(out_dir) / name
+    with explained(target):
+        require_writable(Path(out_dir))
+        if target.exists():
+            _stands(target, known, replace_draft, only=known.keys())
+
+
+def _stands(
+    target: Path,
+    payload: Mapping[str, bytes],
+    replace_draft: bool,
+    only: Collection[str] | None = None,
+) -> bool:
     """Say whether what is there is this package; false if it may be replaced."""
     if not target.is_dir():
         raise PackageError(f"{target}: a file with the package's name is there; move it away")
-    old = read_payload(target)
+    whole = read_payload(target)
+    old = {name: c for name, c in whole.items() if only is None or name in only}
     changes = payload_changes(old, payload)
     if not changes:
         return True
     if not (target / "bagit.txt").is_file():
         raise PackageError(f"{target}: a folder that is no package has this name; move it away")
-    status = _status(old)
+    status = _status(whole)
     signed = (target / SIGNATURES).exists()
     if status == "draft" and not signed and replace_draft:
         return False

@@ -109,7 +109,7 @@ def build(
     """
     from reportgen.case import read_case, side_files
     from reportgen.package.names import package_name
-    from reportgen.package.write import write_package
+    from reportgen.package.write import require_place, write_package
 
     say(f"reading {case_path.name}")
     case = read_case(case_path)
@@ -124,13 +124,20 @@ def build(
         "digest": "sha512:" + hashlib.sha512(template.read_bytes()).hexdigest(),
     }
     resolved["provenance"] = provenance(case_path, sides, resolved["template_record"])
+    document = resolved["document"]
+    name = package_name(document["number"], document["revision"])
+    require_place(
+        options.output, name, {**sides, "case.yaml": case_path.read_bytes(),
+                               "inputs.json": _json(resolved),
+                               "template.ipynb": template.read_bytes()},
+        replace_draft=options.replace_draft,
+    )  # fmt: skip
     payload, results = payload_of(case_path, template, resolved, sides, options, say, house)
     say("writing the package")
-    document = resolved["document"]
     kept: list[str] = []
     package = write_package(
         options.output,
-        package_name(document["number"], document["revision"]),
+        name,
         payload,
         bag_info(document),
         replace_draft=options.replace_draft,

@@ -11,10 +11,10 @@ from pathlib import Path
 
 import pytest
 
-from reportgen.errors import PackageError
+from reportgen.errors import DiskError, PackageError
 from reportgen.package import disk
 from reportgen.package.changes import field_changes, payload_changes
-from reportgen.package.write import read_payload, write_package
+from reportgen.package.write import read_payload, require_place, write_package
 
 INFO = {"External-Identifier": "CAL-0417"}
 
@@ -135,10 +135,27 @@ def test_a_first_signature_is_there_from_the_first_moment(workshop, tmp_path, ju
     assert [signer.role for signer in judge(path).signers] == ["prepared"]
 
 
+def test_what_would_be_refused_after_a_calculation_is_refused_before_it(workshop, tmp_path):
+    payload = workshop.payload()
+    known = {name: payload[name] for name in ("case.yaml", "inputs.json")}
+    require_place(tmp_path / "not" / "there", "CAL-0417_B", known)
+    assert list(tmp_path.iterdir()) == []
+    path = workshop.package(tmp_path, "prepared")
+    require_place(tmp_path, path.name, known)
+    other = known | {"inputs.json": b'{"rotor": {"mass": {"si": 63.0, "unit": "kg"}}}'}
+    with pytest.raises(PackageError, match=r"raise the revision(.|\n)*rotor.mass.si: 62.0 → 63.0"):
+        require_place(tmp_path, path.name, other)
+    draft = workshop.package(tmp_path, status="draft", revision="C")
+    require_place(tmp_path, draft.name, other, replace_draft=True)
+    (tmp_path / "file").write_text("")
+    with pytest.raises(DiskError, match="a file is where a folder should be"):
+        require_place(tmp_path / "file" / "out", "CAL-0417_B", known)
+
+
 LIMITED = """
 import json, resource, sys
 from pathlib import Path
-from reportgen.errors import PackageError
+from reportgen.errors import DiskError, PackageError
 from reportgen.package.write import write_package
 limit, folder = int(sys.argv[1]), Path(sys.argv[2])
 payload = {"results.json": b"{}", "big.bin": bytes(200_000), "small.txt": b"x"}
@@ -179,6 +196,8 @@ def test_a_folder_that_cannot_be_written_is_one_clear_error(workshop):
     try:
         with pytest.raises(PackageError, match="cannot be written to"):
             write_package(folder, "CAL-0417_B", workshop.payload(), INFO)
+        with pytest.raises(DiskError, match="cannot be written to"):
+            require_place(folder / "out", "CAL-0417_B", {})
     finally:
         if user == 0:
             os.seteuid(0)
@@ -189,7 +208,7 @@ def test_a_folder_that_cannot_be_written_is_one_clear_error(workshop):
 RACE = """
 import sys
 from pathlib import Path
-from reportgen.errors import PackageError
+from reportgen.errors import DiskError, PackageError
 from reportgen.package.write import write_package
 folder, own = Path(sys.argv[1]), sys.argv[2].encode()
 payload = {"results.json": b"{}", **{f"{i}.txt": own * 1000 for i in range(20)}}
